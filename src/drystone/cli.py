@@ -1,0 +1,5 @@
+"""Command line."""
+
+
+def main() -> None:
+    """Run the command line."""

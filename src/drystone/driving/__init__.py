@@ -1,0 +1,1 @@
+"""Floor 4: what reruns and why, the lock, progress, publishing."""

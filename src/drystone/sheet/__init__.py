@@ -1,0 +1,1 @@
+"""Floor 2: from the team's workbook to typed rows, findings and derivations."""
