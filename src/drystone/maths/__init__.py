@@ -1,0 +1,1 @@
+"""Arithmetic of the review: arrays in, frozen dataclasses out; NumPy and SciPy only."""

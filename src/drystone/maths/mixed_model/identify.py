@@ -1,0 +1,69 @@
+"""Can the rows tell the levels apart at all? Answered before any search.
+
+Two components are told apart by the contrasts of the rows that are free of the coefficients. With
+P the projection onto those contrasts, tr(P G_k P G_l) is the Gram matrix of the levels there: a
+zero on its diagonal is a level about which the rows say nothing, a correlation of one a pair of
+levels that act alike (own derivation).
+"""
+
+from dataclasses import replace
+from typing import NoReturn
+
+import numpy as np
+
+from drystone.maths.mixed_model.criterion import Evaluation, evaluate
+from drystone.maths.mixed_model.derivatives import expected_information
+from drystone.maths.mixed_model.prepare import Prepared
+from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY
+from drystone.maths.mixed_model.refuse import FlatLikelihoodError, LevelsIndistinguishableError
+
+#: Correlations this close to one, and shares this small, are rounding error.
+SAME = 1e-9
+
+
+def check_identified(prepared: Prepared) -> None:
+    """Refuse levels that no amount of searching could estimate.
+
+    Raises
+    ------
+    LevelsIndistinguishableError
+        If a set of levels acts alike on the rows, such as study and row with one row per study.
+    FlatLikelihoodError
+        If the coefficients absorb a level completely.
+    """
+    names = prepared.term_names
+    if not names:
+        return
+    plain, at = _at_unit_covariance(prepared)
+    gram = expected_information(plain, at, "REML")
+    free = expected_information(plain, at, "ML")
+    size = np.diag(gram)
+    absorbed = [name for k, name in enumerate(names) if size[k] <= SAME * free[k, k]]
+    if absorbed:
+        raise FlatLikelihoodError(
+            f"The coefficients leave nothing to estimate the level '{absorbed[0]}' from.",
+            levels=absorbed,
+        )
+    scale = np.sqrt(size)
+    values, vectors = np.linalg.eigh(gram / np.outer(scale, scale))
+    if values[0] <= SAME:
+        _refuse_alike([name for k, name in enumerate(names) if abs(vectors[k, 0]) > 1e-3], prepared)
+
+
+def _at_unit_covariance(prepared: Prepared) -> tuple[Prepared, Evaluation]:
+    """The same rows with independent errors of variance one, and no level yet."""
+    plain = replace(prepared, base=np.ones_like(prepared.base))
+    at = evaluate(plain, np.zeros(len(prepared.term_names)), "REML")
+    assert at is not None  # a unit covariance always has an inverse
+    return plain, at
+
+
+def _refuse_alike(names: list[str], prepared: Prepared) -> NoReturn:
+    joined = " and ".join(names)
+    why = {
+        frozenset({STUDY, ROW}): "one row per study",
+        frozenset({SCALE, ROW}): "all sampling variances are alike",
+    }.get(frozenset(names), "they act alike on every contrast of the rows")
+    if frozenset(names) == {STUDY, ROW} and prepared.studies < prepared.rows:
+        why = "they act alike on every contrast that the coefficients leave free"
+    raise LevelsIndistinguishableError(f"{joined} cannot be told apart: {why}.", levels=names)
