@@ -1,0 +1,254 @@
+"""Cluster-robust covariance of the coefficients with the CR2 adjustment and Satterthwaite df.
+
+Bell & McCaffrey 2002 (Survey Methodology 28:169); Tipton 2015 (Psychol Methods 20:375,
+doi 10.1037/met0000011); Pustejovsky & Tipton 2018 (J Bus Econ Stat 36:672,
+doi 10.1080/07350015.2016.1247004). The working covariance is the fitted one.
+
+With Phi = L L' in a cluster, H = (L^-1 X) M (L^-1 X)' and S = L' L, the matrix to be inverted is
+B = S (I - H) S. Its inverse root comes from the singular values of (I - H)^(1/2) S, which keeps
+the digits that squaring would lose; coefficients that only this cluster carries make I - H
+singular, and the number of zero singular values is then known, not guessed (own derivation).
+Everything is invariant under the rotation of the rows, so the rotated axes are used throughout.
+"""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike
+from scipy.linalg import solve_triangular
+
+from drystone.maths.mixed_model.criterion import Evaluation, evaluate
+from drystone.maths.mixed_model.fit import Fit
+from drystone.maths.mixed_model.inference import Inference, contrast_rows, infer
+from drystone.maths.mixed_model.prepare import Prepared
+from drystone.maths.mixed_model.problem import Floats, Ints
+from drystone.maths.mixed_model.refuse import (
+    ClustersCutStudiesError,
+    InvalidProblemError,
+    SingularCovarianceError,
+    TooFewStudiesError,
+)
+
+#: A direction of the design with less than this share left outside the cluster is the cluster's.
+OWNED = 1e-10
+#: Matrix entries handled at a time.
+CHUNK = 4_000_000
+
+
+@dataclass(frozen=True)
+class ClusterRobust:
+    """CR2 covariance of the coefficients, and what the degrees of freedom need.
+
+    Parameters
+    ----------
+    covariance : array, shape (p, p)
+        CR2 covariance.
+    degrees_of_freedom : array, shape (p,)
+        Satterthwaite degrees of freedom of each coefficient.
+    clusters : int
+        Number of clusters J.
+    """
+
+    covariance: Floats
+    degrees_of_freedom: Floats
+    clusters: int
+    _fit: Fit
+    _triangle: Floats
+    _bread: Floats
+    _overlaps: Floats
+    _variances: Floats
+
+    @property
+    def standard_errors(self) -> Floats:
+        """Robust standard errors, shape (p,)."""
+        return np.sqrt(np.diag(self.covariance))
+
+    def satterthwaite(self, contrasts: ArrayLike) -> Floats:
+        """Degrees of freedom, shape (c,), of contrast rows, shape (c, p)."""
+        rows = np.atleast_2d(np.asarray(contrasts, dtype=np.float64))
+        turned = solve_triangular(self._triangle, rows.T, trans="T").T
+        return np.array([self._degrees(row) for row in turned])
+
+    def infer(
+        self, contrasts: ArrayLike | None = None, confidence_percent: float = 95.0
+    ) -> Inference:
+        """Tests and intervals of the coefficients or of contrast rows, shape (c, p)."""
+        names, rows = contrast_rows(self._fit, contrasts)
+        errors = np.sqrt(np.einsum("ci,ij,cj->c", rows, self.covariance, rows))
+        return infer(
+            names,
+            rows @ self._fit.coefficients,
+            errors,
+            self.satterthwaite(rows),
+            confidence_percent,
+            "cluster-robust standard error (CR2), t with Satterthwaite degrees of freedom",
+        )
+
+    def _degrees(self, row: Floats) -> float:
+        """(sum p_jj)^2 / sum p_ij^2 with p_ij = [i = j] d_j - t_i' M t_j."""
+        overlap = self._overlaps @ row
+        own = np.einsum("a,jab,b->j", row, self._variances, row)
+        shared = np.einsum("ja,ab,jb->j", overlap, self._bread, overlap)
+        total = self._bread @ (overlap.T @ overlap)
+        squares = own @ own - 2.0 * own @ shared + np.einsum("ab,ba->", total, total)
+        return float((own - shared).sum() ** 2 / squares) if squares > 0.0 else np.nan
+
+
+def cluster_robust(
+    prepared: Prepared, fit: Fit, clusters: ArrayLike | None = None
+) -> ClusterRobust:
+    """CR2 covariance with the fitted model as the working model.
+
+    Parameters
+    ----------
+    prepared, fit : Prepared, Fit
+        The problem and its fit.
+    clusters : array of int, shape (K,), optional
+        Cluster of each row in the caller's order; the studies by default. Clusters must not cut
+        through correlated rows.
+
+    Raises
+    ------
+    ClustersCutStudiesError
+        If the fitted covariance links rows of different clusters.
+    TooFewStudiesError
+        If there is only one cluster.
+    """
+    at = evaluate(prepared, fit.theta, fit.estimator)
+    if at is None:
+        raise SingularCovarianceError("The fitted covariance has no inverse.")
+    codes = _codes(prepared, clusters)
+    parts = _Parts.empty(int(codes.max()) + 1, prepared.width)
+    bread = _bread(at)
+    residual = prepared.response - at.coordinates @ prepared.basis
+    for which, rows in _batches(codes):
+        parts.fill(which, _adjust(prepared, at, bread, rows), prepared.basis[:, rows], residual)
+    return _assemble(prepared, fit, bread, parts)
+
+
+@dataclass(frozen=True)
+class _Parts:
+    """Per cluster: U' e, X' U and U' Phi U, where U = A W X M."""
+
+    scores: Floats
+    overlaps: Floats
+    variances: Floats
+
+    @staticmethod
+    def empty(clusters: int, width: int) -> "_Parts":
+        square = (clusters, width, width)
+        return _Parts(np.empty((clusters, width)), np.empty(square), np.empty(square))
+
+    def fill(
+        self, which: Ints, adjusted: tuple[Ints, Floats, Floats], basis: Floats, residual: Floats
+    ) -> None:
+        rows, lever, root = adjusted
+        self.scores[which] = np.einsum("bnp,bn->bp", lever, residual[rows])
+        self.overlaps[which] = np.einsum("abn,bnp->bap", basis, lever)
+        half = np.matmul(root.transpose(0, 2, 1), lever)
+        self.variances[which] = np.matmul(half.transpose(0, 2, 1), half)
+
+
+def _bread(at: Evaluation) -> Floats:
+    half = solve_triangular(at.factor, np.eye(len(at.factor)))
+    return np.asarray(half @ half.T)
+
+
+def _codes(prepared: Prepared, clusters: ArrayLike | None) -> Ints:
+    """Cluster of each sorted row, numbered from zero."""
+    if clusters is None:
+        codes = prepared.segment
+    else:
+        given = np.asarray(clusters)
+        if given.shape != (prepared.rows,):
+            raise InvalidProblemError("Every row needs one cluster.")
+        codes = np.unique(given[prepared.order], return_inverse=True)[1]
+        _check_uncut(prepared, codes)
+    if codes.max() == 0:
+        raise TooFewStudiesError("Cluster-robust inference needs at least two clusters.")
+    return codes
+
+
+def _check_uncut(prepared: Prepared, codes: Ints) -> None:
+    blocks = list(prepared.rotation.members)
+    cut = any(np.any(codes[rows] != codes[rows[:, :1]]) for rows in blocks)
+    if prepared.study_term is not None:
+        first = codes[prepared.starts][prepared.segment]
+        cut = cut or bool(np.any(codes != first))
+    if cut:
+        raise ClustersCutStudiesError(
+            "The clusters cut through rows that the model holds to be correlated; "
+            "a cluster must contain whole studies."
+        )
+
+
+def _batches(codes: Ints) -> Iterator[tuple[Ints, Ints]]:
+    """Clusters of one size together: their numbers and their rows, shape (clusters, size)."""
+    order = np.argsort(codes, kind="stable")
+    sizes = np.bincount(codes)
+    size_of_row = sizes[codes[order]]
+    for size in np.unique(sizes):
+        which = np.flatnonzero(sizes == size)
+        rows = order[size_of_row == size].reshape(-1, size)
+        step = max(1, CHUNK // int(size) ** 2)
+        for k in range(0, len(which), step):
+            yield which[k : k + step], rows[k : k + step]
+
+
+def _adjust(
+    prepared: Prepared, at: Evaluation, bread: Floats, rows: Ints
+) -> tuple[Ints, Floats, Floats]:
+    """U = A W X M, shape (clusters, size, p), and the lower root L of Phi."""
+    root = _lower(_covariances(prepared, at, rows))
+    design = np.linalg.solve(root, prepared.basis[:, rows].transpose(1, 2, 0))
+    half = design @ solve_triangular(at.factor, np.eye(prepared.width))
+    inverse_root = _inverse_root(root, half)
+    return rows, root @ (inverse_root @ (design @ bread)), root
+
+
+def _lower(matrices: Floats) -> Floats:
+    return np.asarray(np.linalg.cholesky(matrices), dtype=np.float64)
+
+
+def _covariances(prepared: Prepared, at: Evaluation, rows: Ints) -> Floats:
+    ones, segment = prepared.ones[rows], prepared.segment[rows]
+    same = segment[:, :, None] == segment[:, None, :]
+    made: Floats = at.weights.between_variance * same * ones[:, :, None] * ones[:, None, :]
+    place = np.arange(rows.shape[1])
+    made[:, place, place] += 1.0 / at.weights.precision[rows]
+    return made
+
+
+def _inverse_root(root: Floats, half: Floats) -> Floats:
+    """Moore-Penrose B^(-1/2), where I - H = I - half half' and half has p columns."""
+    left, share, _ = np.linalg.svd(half, full_matrices=False)
+    rest = 1.0 - share**2
+    owned = rest <= OWNED
+    kept = np.sqrt(np.where(owned, 0.0, rest))
+    square = np.matmul(root.transpose(0, 2, 1), root)
+    lowered = square - np.matmul(left * (1.0 - kept)[:, None, :], left.transpose(0, 2, 1) @ square)
+    _, values, axes = np.linalg.svd(lowered)
+    size = values.shape[1]
+    alive = np.arange(size) < size - owned.sum(axis=1)[:, None]
+    inverse = np.where(alive, 1.0 / np.where(alive, values, 1.0), 0.0)
+    made: Floats = np.matmul(axes.transpose(0, 2, 1) * inverse[:, None, :], axes)
+    return made
+
+
+def _assemble(prepared: Prepared, fit: Fit, bread: Floats, parts: _Parts) -> ClusterRobust:
+    inner = parts.scores.T @ parts.scores
+    outer = prepared.coefficients(prepared.coefficients(inner).T)
+    made = ClusterRobust(
+        covariance=outer,
+        degrees_of_freedom=np.empty(0),
+        clusters=len(parts.scores),
+        _fit=fit,
+        _triangle=prepared.triangle,
+        _bread=bread,
+        _overlaps=parts.overlaps,
+        _variances=parts.variances,
+    )
+    degrees = made.satterthwaite(np.eye(prepared.width))
+    object.__setattr__(made, "degrees_of_freedom", degrees)
+    return made
