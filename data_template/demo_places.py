@@ -87,7 +87,7 @@ Bleaberry How 2015 B    Stang End 1997 F        Kirn Barrow 2011 FB     Ling Hag
 Fallow Reins 2017 B     Sheepwash 2008 F        Ewe Crag 2020 FB        Rushy Slack 2002 F
 Hagworm Brow 2016 B     Long Stoop 1995 F       Capplestone 2023 FB     Yowden 2013 F
 Throughstone 2019 B     Winter Pasture 2010 F   Blackrigg Hush 2021 B   Smoot Hole 2014 F
-Cripple Gap 2018 B      Copestone 2012 F        Lathe Meadow 2023 B     Bracken Hass 2009 F
+Lunky Gap 2018 B        Copestone 2012 F        Lathe Meadow 2023 B     Bracken Hass 2009 F
 """
 _LETTERS = {"F": (FORAGE,), "B": (BEETLES,), "FB": (FORAGE, BEETLES)}
 

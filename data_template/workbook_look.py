@@ -32,8 +32,8 @@ COMMENT_AUTHOR = "drystone"
 
 REQUIRED = PatternFill("solid", start_color="FF3F5A4B", end_color="FF3F5A4B")
 OPTIONAL = PatternFill("solid", start_color="FFE3E6DC", end_color="FFE3E6DC")
-ON_DARK = Font(bold=True, color="FFFFFFFF")
-ON_LIGHT = Font(bold=True, color="FF20302A")
+ON_DARK = Font(name="Calibri", size=11, bold=True, color="FFFFFFFF")
+ON_LIGHT = Font(name="Calibri", size=11, bold=True, color="FF20302A")
 BESIDE_GROUP = Border(left=Side(style="medium", color="FF8A9A8F"))
 WRAPPED = Alignment(wrap_text=True, vertical="top")
 
@@ -108,7 +108,8 @@ def add_page(workbook: Workbook, name: str, lines: Sequence[str], width: int = 1
     for line in lines:
         sheet.append([line])
         sheet.cell(sheet.max_row, 1).alignment = WRAPPED
-    sheet.cell(1, 1).font = Font(bold=True, size=14)
+        sheet.row_dimensions[sheet.max_row].height = 16 * _lines(line, width - 10) + 4
+    sheet.cell(1, 1).font = Font(name="Calibri", bold=True, size=14)
     sheet.column_dimensions["A"].width = width
     return sheet
 
@@ -134,8 +135,14 @@ def _dress_header(sheet: Worksheet, index: int, name: str, column: pa.Column) ->
     cell.alignment = WRAPPED
     text = comment_text(column)
     cell.comment = Comment(text, COMMENT_AUTHOR, width=280, height=26 + 20 * _lines(text))
-    width = max(10, min(len(name) + 2, 18))
+    typed = sheet.iter_rows(min_row=2, min_col=index, max_col=index, values_only=True)
+    longest = max([0, *(len(str(value)) for (value,) in typed if value is not None)])
+    width = max(10, _header_width(name), min(longest + 1, 64))
     sheet.column_dimensions[get_column_letter(index)].width = width
+
+
+def _header_width(name: str) -> int:
+    return min(int(1.2 * len(name)) + 3, 30)
 
 
 def _lines(text: str, per_line: int = 38) -> int:
