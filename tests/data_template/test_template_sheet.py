@@ -12,9 +12,14 @@ from drystone.tables import columns, comparisons, studies
 TABLES = {"comparisons": comparisons.COLUMNS, "studies": studies.COLUMNS}
 
 
-@pytest.fixture(scope="module")
-def book(root):
-    return openpyxl.load_workbook(root / "data_template" / "extraction.xlsx")
+@pytest.fixture(scope="module", params=["kept", "made now"])
+def book(request, root, tmp_path_factory):
+    """Return the repository's workbook, and the one that the script writes now."""
+    folder = root / "data_template"
+    if request.param == "made now":
+        folder = tmp_path_factory.mktemp("template")
+        make_template.write_template(folder)
+    return openpyxl.load_workbook(folder / "extraction.xlsx")
 
 
 def test_template_has_three_sheets_and_no_row(book):
