@@ -173,9 +173,10 @@ _README = """\
 
 `extraction.xlsx` holds {rows} comparisons from {studies} studies: a strip in the lee of a wall
 (treatment) against open ground of the same field (control), on {species} species. {shared} of the
-{controls} controls serve several comparisons. {silent} of the {slots} arms come without any
-spread, small studies more often than large ones; the others print an SD, a standard error, a
-95 % confidence interval, a CV or a variance. `config.yaml` asks two questions to the sheet.
+{controls} controls serve several comparisons. {silent} of {slots} entries (two arms in each
+comparison) come without any spread, small studies more often than large ones; the others print an
+SD, a standard error, a 95 % confidence interval, a CV or a variance. `config.yaml` asks two
+questions to the sheet.
 
 The workbook and this page are made by `data_template/make_demo.py`.
 
