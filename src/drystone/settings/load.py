@@ -1,4 +1,4 @@
-"""From the config file to `Settings`, with messages that name the line and the nearest known key."""
+"""From the config file to `Settings`; messages name the line and the nearest known key."""
 
 from __future__ import annotations
 

@@ -152,6 +152,10 @@ class Settings(Part):
     """The whole config of a review."""
 
     sheet: str = Field(description="the extraction sheet: .xlsx, .ods, or a folder of CSV files")
+    title: str = Field("", description="name of the review, as the report prints it")
+    invented: bool = Field(
+        False, description="true when the data are made up; the report then says so at its top"
+    )
     columns: dict[str, str] = Field(
         default_factory=dict, description="the team's column names, as ours: theirs"
     )

@@ -132,7 +132,7 @@ SCHEMA = schema("comparisons", "one comparison of a treatment arm with a control
 
 OPEN_COLUMNS: tuple[str, ...] = tuple(_front())
 NUMBER_COLUMNS: tuple[str, ...] = tuple(
-    name for name, column in COLUMNS.items() if column.dtype.type == float
+    name for name, column in COLUMNS.items() if str(column.dtype) == "float64"
 )
 NUMBERS_USED: tuple[str, ...] = tuple(
     name for name, column in COLUMNS.items() if column.metadata["use"] == NUMBERS

@@ -15,7 +15,6 @@ def _arm_slice(arm: str) -> dict:
         f"{arm}_n": number(f"replicates of the {arm} arm", unit="count", required=True),
         f"{arm}_sd_source": text("where the SD came from", required=True, allowed=SD_SOURCES),
         f"{arm}_sd_pooled": flag("True when the SD is one value for both arms"),
-        f"{arm}_label": text(f"what the {arm} was"),
     }
 
 
@@ -27,9 +26,10 @@ SLICE_COLUMNS = {
     "flip": flag("True when smaller is better: the sign of the effect is turned"),
     **_arm_slice(arms.CONTROL),
     **_arm_slice(arms.TREATMENT),
-    "sheet": text("sheet of the workbook, or file of the folder"),
-    "sheet_row": whole("row number in that sheet"),
 }
+SLICE = schema("slice", "one comparison of one analysis", SLICE_COLUMNS)
+# Labels and addresses decide no number, so they are joined only where they are shown.
+SHOWN_COLUMNS = ("control_label", "treatment_label", "sheet", "sheet_row", "date", "study_year")
 
 
 def _arm_effect(arm: str) -> dict:

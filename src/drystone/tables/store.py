@@ -60,5 +60,6 @@ def _first_failure(error: Exception) -> str:
     cases = getattr(error, "failure_cases", None)
     if isinstance(cases, pd.DataFrame) and len(cases):
         case = cases.iloc[0]
-        return f"column {case.get('column')}: {case.get('check')} fails for {case.get('failure_case')!r}"
+        value = case.get("failure_case")
+        return f"column {case.get('column')}: {case.get('check')} fails for {value!r}"
     return str(error).splitlines()[0]

@@ -1,0 +1,39 @@
+"""What ``drystone check`` does: reads the sheet, prints the findings, writes them as CSV."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from drystone.driving.plan import Plan, make_plan
+from drystone.words.levels import STOP
+
+FINDINGS_FILE = Path("results") / "check" / "findings.csv"
+
+
+def check_review(folder: Path, say: Callable[[str], None]) -> bool:
+    """Print what the check found in the review in ``folder``; True when a row cannot be used.
+
+    Raises
+    ------
+    ConfigProblem, SheetProblem
+        When config or sheet cannot be used at all.
+    """
+    from drystone.sheet.present import collapse, findings_csv
+
+    plan = make_plan(folder.resolve())
+    findings = plan.state.table("findings")
+    for line in collapse(findings):
+        say(str(line))
+    say(_count(plan))
+    target = plan.review.root / FINDINGS_FILE
+    findings_csv(findings, target)
+    say(f"All findings with their cells: {target.relative_to(plan.review.root)}")
+    plan.state.remember()
+    return bool((findings["level"] == STOP).any())
+
+
+def _count(plan: Plan) -> str:
+    rows, ledger = plan.state.table("rows"), plan.state.table("ledger")
+    usable = len(rows) - ledger["row_id"].nunique()
+    return f"{len(rows)} rows: {usable} usable, {len(rows) - usable} in the ledger."

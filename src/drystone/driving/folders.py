@@ -1,0 +1,74 @@
+"""Writes review folders: an empty one to fill, or the invented demo."""
+
+from __future__ import annotations
+
+import shutil
+from pathlib import Path
+
+from drystone.driving.bundled import bundled
+from drystone.driving.files import write_text
+
+SNAKEFILE = """\
+# Plain `snakemake` works here too; `drystone run` is the same with one progress display.
+from drystone.driving.bundled import snakefile
+include: str(snakefile())
+"""
+
+PROFILE = """\
+# Read by plain `snakemake` in this folder.
+cores: 2
+force-use-threads: true      # stages run inside the engine's own process
+rerun-triggers: [mtime]      # the keys carry everything that decides; see drystone's DEVELOPERS.md
+rerun-incomplete: true
+keep-going: true
+max-checksum-file-size: 1000000000
+"""
+
+IGNORED = """\
+cache/
+.snakemake/
+.results-new/
+.results-old/
+"""
+
+
+class FolderTaken(ValueError):
+    """The folder holds something already."""
+
+
+def start(folder: Path) -> None:
+    """Write an empty review: config, workbook template, and what plain snakemake needs.
+
+    Raises
+    ------
+    FolderTaken
+        When ``folder`` exists and is not empty; nothing is written then.
+    """
+    template = bundled("data_template")
+    _write(folder, template / "config.yaml", template / "extraction.xlsx")
+
+
+def write_demo(folder: Path) -> None:
+    """Write the invented demo; see `start`."""
+    template = bundled("data_template") / "demo"
+    _write(folder, template / "config.yaml", template / "extraction.xlsx")
+    shutil.copyfile(template / "README.md", folder / "README.md")
+
+
+def is_review(folder: Path) -> bool:
+    """Whether ``folder`` holds a config where a review has it."""
+    return (folder / "config" / "config.yaml").is_file()
+
+
+def _write(folder: Path, config: Path, sheet: Path) -> None:
+    if folder.exists() and (not folder.is_dir() or any(folder.iterdir())):
+        raise FolderTaken(
+            f"{folder} exists and is not empty; name a new folder, nothing was written"
+        )
+    for name in ("config", "data", "profiles/default"):
+        (folder / name).mkdir(parents=True, exist_ok=True)
+    shutil.copyfile(config, folder / "config" / "config.yaml")
+    shutil.copyfile(sheet, folder / "data" / "extraction.xlsx")
+    write_text(folder / "Snakefile", SNAKEFILE)
+    write_text(folder / "profiles" / "default" / "config.yaml", PROFILE)
+    write_text(folder / ".gitignore", IGNORED)

@@ -1,0 +1,146 @@
+"""What ``drystone run`` shows: one progress display, then what ran, what left, and the report."""
+
+from __future__ import annotations
+
+import shutil
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from drystone.driving import exits
+from drystone.driving.front import Outcome, run
+from drystone.driving.plan import Plan
+
+if TYPE_CHECKING:
+    from rich.progress import Progress
+
+
+class StrictStop(Exception):
+    """Rows have findings of level stop and the team asked not to run then."""
+
+
+class Display:
+    """Progress on a terminal, plain lines elsewhere."""
+
+    def __init__(self) -> None:
+        self._bar: Progress | None = None
+        self._total = 0
+        self._task: Any = None
+        self._phrases: dict[str, str] = {}
+
+    def begin(self, plan: Plan) -> None:
+        """Show how much there is to do."""
+        self._total = len(plan.pending)
+        self._phrases = {name: item.step.phrase for name, item in plan.pending.items()}
+        if not self._total or not sys.stderr.isatty():
+            return
+        from rich.console import Console
+        from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn
+
+        columns = (BarColumn(), MofNCompleteColumn(), TextColumn("{task.description}"))
+        self._bar = Progress(*columns, console=Console(stderr=True), transient=True)
+        self._task = self._bar.add_task("starting", total=self._total)
+        self._bar.start()
+
+    def watch(self, event: dict[str, Any]) -> None:
+        """Show one event of the worker."""
+        if self._bar is None:
+            return
+        if event["event"] == "started":
+            self._bar.update(self._task, description=event["phrase"])
+        elif event["event"] == "finished":
+            self._bar.advance(self._task)
+
+    def end(self) -> None:
+        """Take the progress display away."""
+        if self._bar is not None:
+            self._bar.stop()
+            self._bar = None
+
+
+def run_review(folder: Path, cores: int, strict: bool = False, tidy: bool = False) -> int:
+    """Run the review in ``folder`` and say how it went; returns the exit code."""
+    display = Display()
+    seen: list[Plan] = []
+
+    def begin(plan: Plan) -> None:
+        seen.append(plan)
+        if strict and _stop_lines(plan):
+            raise StrictStop
+        display.begin(plan)
+
+    try:
+        outcome = run(folder, cores, begin, display.watch)
+    except StrictStop:
+        _say_stops(seen[0])
+        _say("Nothing was run, because of --strict. `drystone check` lists the findings.")
+        return exits.STOPS
+    finally:
+        display.end()
+    return _last_word(seen[0], outcome, tidy)
+
+
+def _last_word(plan: Plan, outcome: Outcome, tidy: bool) -> int:
+    for note in outcome.notes:
+        _say(note)
+    if outcome.interrupted:
+        _say("Interrupted. The last good results stay; the next run goes on from here.")
+        return exits.INTERRUPTED
+    if outcome.failures:
+        for failure in outcome.failures:
+            _say(f"drystone: {failure}")
+        _say(
+            "The last good results stay as they were." if _has_results(plan) else "No results yet."
+        )
+        return exits.FAILED
+    _say_ran(plan, outcome)
+    _say_stops(plan)
+    _say_leftovers(plan, tidy)
+    print(_shown(plan.review.results / "report.html"))  # noqa: T201 - the one line for scripts
+    return exits.DONE
+
+
+def _say_ran(plan: Plan, outcome: Outcome) -> None:
+    total = len(plan.steps)
+    if not outcome.ran:
+        _say(f"Nothing to do: all {total} steps are up to date.")
+        return
+    _say(f"{len(outcome.ran)} of {total} steps ran; the others were up to date.")
+
+
+def _say_stops(plan: Plan) -> None:
+    lines = _stop_lines(plan)
+    if lines:
+        rows = plan.state.table("rows")
+        _say(f"{sum(lines.values())} of {len(rows)} rows cannot be used and stand in the ledger:")
+        for reason, count in lines.items():
+            _say(f"  {count} x {reason}")
+
+
+def _stop_lines(plan: Plan) -> dict[str, int]:
+    """Rules by which rows left at the check, with how many."""
+    ledger = plan.state.table("ledger")
+    return {str(rule): int(n) for rule, n in ledger["rule"].value_counts().items()}
+
+
+def _say_leftovers(plan: Plan, tidy: bool) -> None:
+    unused = plan.leftovers()
+    for path in unused:
+        if tidy:
+            shutil.rmtree(plan.review.root / path, ignore_errors=True)
+            _say(f"Removed {path}, which the config no longer has.")
+        else:
+            _say(f"{path} belongs to nothing in the config; `drystone run --tidy` removes it.")
+
+
+def _has_results(plan: Plan) -> bool:
+    return (plan.review.results / "manifest.json").exists()
+
+
+def _shown(path: Path) -> Path:
+    here = Path.cwd()
+    return path.relative_to(here) if path.is_relative_to(here) else path
+
+
+def _say(text: str) -> None:
+    print(text, file=sys.stderr)  # noqa: T201 - the command's talk goes to standard error

@@ -1,0 +1,136 @@
+"""Publish: reads the cache -> replaces results/ as a whole, the manifest written last.
+
+See `drystone.stages.swap_folders` for what an interruption leaves.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import shutil
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pandas as pd
+
+from drystone.maths.log_ratio import percent_change
+from drystone.stages import collect
+from drystone.stages.render_report import versions
+from drystone.stages.swap_folders import NEW, recover, swap
+from drystone.tables.csv_store import write_csv
+from drystone.tables.store import read_table
+
+if TYPE_CHECKING:
+    from drystone.settings.model import Settings
+
+FINDINGS = Path("check") / "findings.csv"
+SUMMARY = (
+    *("analysis", "strategy", "model", "coefficient", "estimate", "se", "df"),
+    *("ci_low", "ci_high", "p", "se_model", "pi_low", "pi_high"),
+    *("percent", "percent_ci_low", "percent_ci_high", "rows", "studies"),
+)
+
+
+def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
+    """Replace ``results/`` and write ``cache/published.json``."""
+    recover(root)
+    new = root / NEW
+    shutil.rmtree(new, ignore_errors=True)
+    new.mkdir()
+    write_csv(summary_table(root, settings), new / "summary.csv")
+    _write_tables(root, settings, intake, new)
+    shutil.copyfile(root / "cache" / "report" / "report.html", new / "report.html")
+    shutil.copytree(root / "cache" / "report" / "figures", new / "figures")
+    manifest = _manifest(root, settings, new, run_id)
+    (new / "manifest.json").write_text(json.dumps(manifest, indent=1), encoding="utf-8")
+    swap(root)
+    stamp = root / "cache" / "published.json"
+    stamp.write_text(json.dumps({"run": run_id}), encoding="utf-8")
+
+
+def summary_table(root: Path, settings: Settings) -> pd.DataFrame:
+    """One row per analysis x strategy x model x coefficient, refused models with their reason."""
+    parts = []
+    for place in collect.places(root, settings):
+        table = place.table("coefficients")
+        table.insert(0, "analysis", place.analysis)
+        table.insert(1, "strategy", place.strategy)
+        table.insert(2, "model", place.model)
+        for name, value in _components(place).items():
+            table[f"var_{name}"] = value
+        parts.append(table)
+    table = pd.concat(parts, ignore_index=True)
+    for target, source in (
+        ("percent", "estimate"),
+        ("percent_ci_low", "ci_low"),
+        ("percent_ci_high", "ci_high"),
+    ):
+        table[target] = percent_change(table[source].to_numpy(float))
+    levels = [name for name in table.columns if name.startswith("var_")]
+    return table[[*SUMMARY, *levels, "log_likelihood", "refused"]]
+
+
+def _components(place: collect.Place) -> dict[str, float]:
+    table = place.table("components")
+    found = dict(zip(table["level"], table["variance"], strict=True))
+    return {level: float(found.get(level, np.nan)) for level in ("study", "row")}
+
+
+def _write_tables(root: Path, settings: Settings, intake: Path, target: Path) -> None:
+    check = root / "cache" / "check"
+    write_csv(read_table(check / "findings.parquet"), target / FINDINGS)
+    tables = target / "tables"
+    write_csv(read_table(check / "findings.parquet"), tables / "findings.csv")
+    write_csv(read_table(check / "derivations.parquet"), tables / "derivations.csv")
+    write_csv(collect.whole_ledger(root, settings, intake), tables / "ledger.csv")
+    for name in settings.all_analyses():
+        folder = collect.analysis_folder(root, name)
+        rows = collect.shown_slice(root, name, intake)
+        effects = read_table(folder / "effects.parquet").drop(columns="study")
+        write_csv(rows.merge(effects, on="row_id"), tables / name / "effects.csv")
+        write_csv(read_table(folder / "side_by_side.parquet"), tables / name / "side by side.csv")
+        for part in ("sampling", "covariance", "averages"):
+            joined = _over_strategies(folder, settings, part)
+            write_csv(joined, tables / name / f"{part}.csv")
+        for part in ("components", "heterogeneity"):
+            write_csv(_over_models(root, settings, name, part), tables / name / f"{part}.csv")
+
+
+def _over_strategies(folder: Path, settings: Settings, part: str) -> pd.DataFrame:
+    tables = []
+    for strategy in settings.all_strategies():
+        table = read_table(folder / strategy / f"{part}.parquet")
+        table.insert(0, "strategy", strategy)
+        tables.append(table)
+    return pd.concat(tables, ignore_index=True)
+
+
+def _over_models(root: Path, settings: Settings, name: str, part: str) -> pd.DataFrame:
+    tables = []
+    for place in collect.places(root, settings):
+        if place.analysis == name:
+            table = place.table(part)
+            table.insert(0, "strategy", place.strategy)
+            table.insert(1, "model", place.model)
+            tables.append(table)
+    return pd.concat(tables, ignore_index=True)
+
+
+def _manifest(root: Path, settings: Settings, folder: Path, run_id: str) -> dict[str, object]:
+    files = sorted(path for path in folder.rglob("*") if path.is_file())
+    sheet = root / settings.sheet
+    inputs = [sheet] if sheet.is_file() else sorted(sheet.glob("*.csv"))
+    config = root / "config" / "config.yaml"
+    return {
+        "run": run_id,
+        "published": datetime.now(UTC).isoformat(timespec="seconds"),
+        "versions": versions(),
+        "inputs": {path.name: _sha256(path) for path in [*inputs, config] if path.is_file()},
+        "files": {path.relative_to(folder).as_posix(): _sha256(path) for path in files},
+    }
+
+
+def _sha256(path: Path) -> str:
+    return hashlib.sha256(path.read_bytes()).hexdigest()

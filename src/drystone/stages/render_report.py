@@ -1,0 +1,111 @@
+"""Report: reads all cached tables -> writes one offline HTML page and its figures."""
+
+from __future__ import annotations
+
+import json
+import os
+import platform
+import shutil
+from importlib import metadata
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from drystone import __version__
+from drystone.report import facts as shown
+from drystone.report.figures import save_figures
+from drystone.report.page import render_page
+from drystone.stages import collect
+from drystone.stages.intake_store import load_table
+from drystone.tables.store import read_table
+
+if TYPE_CHECKING:
+    from drystone.settings.model import Analysis, Settings
+
+LIBRARIES = ("numpy", "scipy", "pandas", "pyarrow", "pandera", "snakemake")
+
+
+def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
+    """Write ``cache/report/report.html``, ``cache/report/figures/`` and their list."""
+    facts = gather(root, settings, intake, run_id)
+    target = root / "cache" / "report"
+    target.mkdir(parents=True, exist_ok=True)
+    figures = target / "figures"
+    shutil.rmtree(figures, ignore_errors=True)
+    figures.mkdir()
+    save_figures(facts, figures)
+    _replace(target / "report.html", render_page(facts))
+    names = sorted(path.name for path in figures.iterdir())
+    _replace(target / "figures.json", json.dumps(names, indent=1))
+
+
+def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.ReportFacts:
+    """Facts of the report, from the cached tables."""
+    rows = load_table(intake, "rows")
+    checked = root / "cache" / "check"
+    return shown.ReportFacts(
+        review_name=settings.title or root.resolve().name,
+        made_from=shown.MadeFrom(run_id, versions()),
+        settings=settings,
+        flow=shown.Flow(len(rows), int(rows["study"].nunique())),
+        findings=read_table(checked / "findings.parquet"),
+        ledger=collect.whole_ledger(root, settings, intake),
+        derivations=read_table(checked / "derivations.parquet"),
+        studies=read_table(checked / "studies.parquet"),
+        analyses=tuple(
+            _analysis(root, settings, intake, name, analysis)
+            for name, analysis in settings.all_analyses().items()
+        ),
+        demo=settings.invented,
+    )
+
+
+def versions() -> dict[str, str]:
+    """Versions of what the numbers depend on."""
+    found = {"drystone": __version__, "Python": platform.python_version()}
+    return found | {name: metadata.version(name) for name in LIBRARIES}
+
+
+def _analysis(
+    root: Path, settings: Settings, intake: Path, name: str, analysis: Analysis
+) -> shown.AnalysisFacts:
+    folder = collect.analysis_folder(root, name)
+    return shown.AnalysisFacts(
+        name=name,
+        settings=analysis,
+        slice=collect.shown_slice(root, name, intake),
+        effects=read_table(folder / "effects.parquet"),
+        strategies=tuple(
+            _strategy(root, settings, name, analysis, strategy)
+            for strategy in settings.all_strategies()
+        ),
+        side_by_side=read_table(folder / "side_by_side.parquet"),
+        elsewhere=collect.elsewhere(load_table(intake, "rows"), analysis, settings),
+    )
+
+
+def _strategy(
+    root: Path, settings: Settings, name: str, analysis: Analysis, strategy: str
+) -> shown.StrategyFacts:
+    folder = collect.analysis_folder(root, name) / strategy
+    models = []
+    for model, formula in analysis.models.items():
+        parts = ("coefficients", "components", "heterogeneity")
+        tables = (read_table(folder / model / f"{part}.parquet") for part in parts)
+        models.append(shown.ModelFacts(model, formula, *tables))
+    return shown.StrategyFacts(
+        name=strategy,
+        settings=settings.all_strategies()[strategy],
+        sampling=read_table(folder / "sampling.parquet"),
+        covariance=read_table(folder / "covariance.parquet"),
+        averages=read_table(folder / "averages.parquet"),
+        models=tuple(models),
+    )
+
+
+def _replace(path: Path, text: str) -> None:
+    partial = path.with_name(f".{path.name}.{os.getpid()}.part")
+    try:
+        partial.write_text(text, encoding="utf-8")
+        os.replace(partial, path)
+    finally:
+        partial.unlink(missing_ok=True)

@@ -1,0 +1,135 @@
+"""Slice: reads the stored intake -> writes the rows of one analysis, with arms and SDs settled.
+
+A physical arm gets one code and one SD in every row that uses it. A blank SD of an arm that
+reports one in another row is read from there.
+"""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pandas as pd
+import pandera.pandas as pa
+
+from drystone.stages.intake_store import load_table
+from drystone.stages.ledger import ledger_rows
+from drystone.stages.select_rows import extra_columns, usable_rows
+from drystone.tables.check import LEDGER
+from drystone.tables.effects import SLICE, SLICE_COLUMNS
+from drystone.tables.store import write_table
+from drystone.words.arms import ARMS, CONTROL, TREATMENT
+
+if TYPE_CHECKING:
+    from drystone.settings.model import Analysis, Outcome
+
+
+def run(
+    intake: Path, analysis: Analysis, outcomes: dict[str, Outcome], target: Path, ledger: Path
+) -> None:
+    """Write the slice to ``target`` and the rows that its filters leave out to ``ledger``."""
+    rows = usable_rows(load_table(intake, "rows"), load_table(intake, "ledger"), analysis)
+    kept, left = apply_filters(rows, analysis)
+    table = settle_arms(kept)
+    table["flip"] = table["outcome"].map({name: item.flip_sign for name, item in outcomes.items()})
+    table["flip"] = table["flip"].astype(bool)
+    extra = [name for name in extra_columns(analysis) if name not in SLICE_COLUMNS]
+    write_table(table[list(SLICE_COLUMNS) + extra], target, _with_extra(extra))
+    write_table(left, ledger, LEDGER)
+
+
+def apply_filters(rows: pd.DataFrame, analysis: Analysis) -> tuple[pd.DataFrame, pd.DataFrame]:
+    """Split ``rows`` into those that pass the equality filters and ledger entries of the rest."""
+    reasons = pd.Series("", index=rows.index, dtype=object)
+    for column, allowed in analysis.where.items():
+        out = ~_as_text(rows[column]).isin(allowed) & (reasons == "")
+        reasons[out] = f"{column} is not {_either(allowed)}"
+    for column, refused in analysis.where_not.items():
+        out = _as_text(rows[column]).isin(refused) & (reasons == "")
+        reasons[out] = f"{column} is {_either(refused)}"
+    out = reasons != ""
+    left = ledger_rows(rows[out], "filtered out", reasons[out])
+    return rows[~out].reset_index(drop=True), left
+
+
+def settle_arms(rows: pd.DataFrame) -> pd.DataFrame:
+    """Give every row its arms' codes and SDs; see the module's text."""
+    table = rows.copy()
+    arms = _long(rows)
+    arms["arm"] = _arm_codes(arms)
+    arms["sd_settled"] = arms.groupby("arm")["sd"].transform("first")
+    own, settled = arms["sd"].notna(), arms["sd_settled"].notna()
+    arms["source"] = np.select([own, settled], ["own", "other row"], "none")
+    arms["pooled"] = arms.groupby("arm")["pooled"].transform("max")
+    for role in ARMS:
+        part = arms[arms["role"] == role].reset_index(drop=True)
+        table[f"{role}_arm"] = part["arm"]
+        table[f"{role}_sd"] = part["sd_settled"]
+        table[f"{role}_sd_source"] = part["source"]
+        table[f"{role}_sd_pooled"] = part["pooled"].astype(bool)
+    return table
+
+
+def _long(rows: pd.DataFrame) -> pd.DataFrame:
+    """One row per arm of each comparison: controls first, then treatments."""
+    parts = []
+    for role in (CONTROL, TREATMENT):
+        parts.append(
+            pd.DataFrame(
+                {
+                    "role": role,
+                    "row_id": rows["row_id"],
+                    "study": rows["study"],
+                    "outcome": rows["outcome"],
+                    "date": rows["date"].astype(object).where(rows["date"].notna(), ""),
+                    "id": rows[f"{role}_id"].astype(object),
+                    "mean": rows[f"{role}_mean"],
+                    "n": rows[f"{role}_n"],
+                    "sd": rows[f"{role}_sd_value"],
+                    "pooled": rows["sd_pooled"].astype(bool),
+                }
+            )
+        )
+    return pd.concat(parts, ignore_index=True)
+
+
+def _arm_codes(arms: pd.DataFrame) -> pd.Series:
+    """Code of each physical arm; one id with unlike numbers is several arms (a finding says so)."""
+    codes = arms["row_id"] + " | " + arms["role"]
+    named = arms["id"].notna()
+    keys = ["study", "outcome", "date", "id"]
+    for key, group in arms[named].groupby(keys, sort=False, dropna=False):
+        base = " | ".join(str(part) for part in key if str(part))
+        for number, index in enumerate(_same_numbers(group)):
+            codes[index] = base if number == 0 else f"{base} #{number + 1}"
+    return codes
+
+
+def _same_numbers(group: pd.DataFrame) -> list[pd.Index]:
+    """Split rows of one arm id by mean, n and SD; a blank SD goes with the first that fits."""
+    found: list[pd.Index] = []
+    for _, same in group.groupby(["mean", "n"], sort=False, dropna=False):
+        values = same["sd"].dropna().unique()
+        if len(values) <= 1:
+            found.append(same.index)
+            continue
+        blank = same.index[same["sd"].isna()]
+        for position, value in enumerate(values):
+            index = same.index[same["sd"] == value]
+            found.append(index.union(blank) if position == 0 else index)
+    return found
+
+
+def _with_extra(extra: list[str]) -> pa.DataFrameSchema:
+    return SLICE.add_columns({name: pa.Column(None, nullable=True) for name in extra})
+
+
+def _as_text(column: pd.Series) -> pd.Series:
+    if pd.api.types.is_numeric_dtype(column.dtype):
+        return column.map(lambda value: "" if pd.isna(value) else f"{value:g}")
+    return column.astype(object).where(column.notna(), "")
+
+
+def _either(values: tuple[str, ...]) -> str:
+    return " or ".join(f"'{value}'" for value in values)

@@ -1,0 +1,134 @@
+"""Average CV by arm and outcome, over the physical arms that report an SD.
+
+An average of one outcome and arm with fewer than ten reporting arms is pooled over the outcomes of
+the analysis, and the table says so. Arms stay apart: pooling them loses what the strategy is for.
+SDs that are one value for both arms stay out of averages by arm; where they are the majority the
+average is over both arms.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pandas as pd
+
+from drystone.maths import average_variation as variation
+from drystone.stages.strategies.filled import NothingReported
+from drystone.tables.effects import AVERAGES
+from drystone.tables.store import conform
+from drystone.words import strategies
+from drystone.words.arms import ARMS
+
+if TYPE_CHECKING:
+    from drystone.settings.model import Strategy
+
+BOTH = "both"
+ALL_OUTCOMES = "all outcomes"
+
+
+@dataclass(frozen=True)
+class Averages:
+    """Squared CV for each (outcome, arm), and the table that shows all versions."""
+
+    values: dict[tuple[str, str], float]
+    table: pd.DataFrame
+
+    def by_row(self, rows: pd.DataFrame) -> dict[str, np.ndarray]:
+        """Plugged-in squared CV of each arm, (k,) each."""
+        return {
+            arm: np.array([self.values[outcome, arm] for outcome in rows["outcome"]], dtype=float)
+            for arm in ARMS
+        }
+
+
+def average_cv(rows: pd.DataFrame, strategy: Strategy) -> Averages:
+    """Average squared CV of every arm and outcome in ``rows``.
+
+    Raises
+    ------
+    NothingReported
+        When no arm reports an SD above zero.
+    """
+    arms = reporting_arms(rows)
+    if arms.empty:
+        raise NothingReported("no arm of this analysis reports an SD, so there is no average CV")
+    together = strategy.average_over == strategies.BOTH_ARMS or _pooled_majority(arms)
+    if not together:
+        arms = arms[~arms["pooled"]]
+    values: dict[tuple[str, str], float] = {}
+    shown: dict[tuple[str, str], pd.DataFrame] = {}
+    for outcome in sorted(rows["outcome"].unique()):
+        for arm in ARMS:
+            chosen = _choose(arms, outcome, BOTH if together else arm)
+            key = (chosen.outcome, chosen.arm)
+            if key not in shown:
+                shown[key] = _versions(chosen, strategy.average_cv)
+            used = shown[key].loc[shown[key]["used"], "cv2"]
+            values[outcome, arm] = float(used.iloc[0])
+    return Averages(values, conform(pd.concat(shown.values(), ignore_index=True), AVERAGES))
+
+
+def reporting_arms(rows: pd.DataFrame) -> pd.DataFrame:
+    """Physical arms with an SD, each once in each role: outcome, role, arm, cv, n, pooled."""
+    parts = [
+        pd.DataFrame(
+            {
+                "outcome": rows["outcome"],
+                "role": role,
+                "arm": rows[f"{role}_arm"],
+                "cv": rows[f"{role}_sd"] / rows[f"{role}_mean"],
+                "n": rows[f"{role}_n"],
+                "pooled": rows[f"{role}_sd_pooled"],
+            }
+        )
+        for role in ARMS
+    ]
+    arms = pd.concat(parts, ignore_index=True)
+    arms = arms[arms["cv"].notna() & (arms["cv"] > 0)]
+    return arms.drop_duplicates(["role", "arm"]).sort_values(["role", "arm"], ignore_index=True)
+
+
+@dataclass(frozen=True)
+class _Chosen:
+    outcome: str
+    arm: str
+    arms: pd.DataFrame
+    because: str
+
+
+def _choose(arms: pd.DataFrame, outcome: str, arm: str) -> _Chosen:
+    """Reporting arms for one average: its own, or pooled upward when they are too few."""
+    of_arm = arms if arm == BOTH else arms[arms["role"] == arm]
+    own = of_arm[of_arm["outcome"] == outcome]
+    enough = len(own) >= variation.FEWEST_ARMS
+    if enough or (len(own) and of_arm["outcome"].nunique() == 1):
+        few = "" if enough else f"only {len(own)} arms report, and there is nothing to pool with"
+        return _Chosen(outcome, arm, _once(own), few)
+    few = f"only {len(own)} arms of {outcome} report"
+    if len(of_arm):
+        return _Chosen(ALL_OUTCOMES, arm, _once(of_arm), few)
+    return _Chosen(ALL_OUTCOMES, BOTH, _once(arms), f"no {arm} arm reports")
+
+
+def _once(arms: pd.DataFrame) -> pd.DataFrame:
+    return arms.drop_duplicates("arm")
+
+
+def _pooled_majority(arms: pd.DataFrame) -> bool:
+    return bool(arms["pooled"].mean() > 0.5)
+
+
+def _versions(chosen: _Chosen, used: str) -> pd.DataFrame:
+    cv, n = chosen.arms["cv"].to_numpy(float), chosen.arms["n"].to_numpy(float)
+    found = variation.all_versions(cv, n)
+    top = variation.largest_share(cv, n, used)
+    table = pd.DataFrame({"version": list(found), "cv2": list(found.values())})
+    table["outcome"], table["arm"] = chosen.outcome, chosen.arm
+    table["reporting_arms"] = len(cv)
+    table["used"] = table["version"] == used
+    table["pooled_because"] = chosen.because or None
+    table["largest_share"] = top.share
+    table["largest_arm"] = chosen.arms["arm"].iloc[top.index]
+    return table

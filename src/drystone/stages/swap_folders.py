@@ -1,0 +1,34 @@
+"""Replaces results/ as a whole: the new folder is complete before the old one moves.
+
+An interruption between the two moves leaves the old folder under a name from which the next run
+takes it back.
+"""
+
+from __future__ import annotations
+
+import os
+import shutil
+from pathlib import Path
+
+NEW, OLD = ".results-new", ".results-old"
+
+
+def swap(root: Path) -> None:
+    """Put the new results where the old ones were."""
+    results, old = root / "results", root / OLD
+    if results.exists():
+        os.replace(results, old)
+    os.replace(root / NEW, results)
+    shutil.rmtree(old, ignore_errors=True)
+
+
+def recover(root: Path) -> bool:
+    """Take back the old results after an interruption between two moves; True when that was so."""
+    results, old = root / "results", root / OLD
+    if not old.exists():
+        return False
+    if results.exists():
+        shutil.rmtree(old, ignore_errors=True)
+        return False
+    os.replace(old, results)
+    return True
