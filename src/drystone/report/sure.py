@@ -1,0 +1,151 @@
+"""How sure: strategies side by side, intervals of both kinds, and how much true effects differ."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from drystone.report import numbers
+from drystone.report.facts import (
+    AnalysisFacts,
+    ModelFacts,
+    Record,
+    ReportFacts,
+    StrategyFacts,
+    main_model,
+    records,
+)
+from drystone.report.scale import Bar, RatioScale, Tick, ratio_scale
+from drystone.report.tables_shown import Shown, row, shown
+from drystone.words import strategies
+
+ROW_SET_WORDS = {
+    strategies.ALL_ROWS: "all usable rows",
+    strategies.COMPLETE_ROWS: "rows with both SDs",
+}
+
+
+@dataclass(frozen=True)
+class SideRow:
+    """One strategy in the comparison."""
+
+    strategy: str
+    row_set: str
+    rows: str
+    studies: str
+    text: str
+    df: str
+    beside: str
+    predicted: str
+    bar: Bar | None
+    bar_beside: Bar | None
+    refused: str
+    primary: bool
+
+
+@dataclass(frozen=True)
+class Sure:
+    """Section 'How sure' of one analysis."""
+
+    model: str
+    ticks: tuple[Tick, ...]
+    zero: float
+    sides: tuple[SideRow, ...]
+    main_kind: str
+    heterogeneity: Shown
+    components: Shown
+
+
+def sure(facts: ReportFacts, analysis: AnalysisFacts) -> Sure | None:
+    """Comparison of the overall effect over the strategies; None without an overall model."""
+    model = next((main_model(s) for s in analysis.strategies if main_model(s)), None)
+    if model is None:
+        return None
+    table = analysis.side_by_side[analysis.side_by_side["model"] == model.name]
+    limits = [float(x) for name in ("estimate", "ci_low", "ci_high") for x in table[name]]
+    scale = ratio_scale([], limits)
+    return Sure(
+        model.name,
+        scale.ticks(),
+        scale.at(0.0),
+        tuple(_side(record, analysis, scale) for record in records(table)),
+        facts.settings.inference.interval,
+        _heterogeneity(analysis, model.name),
+        _components(analysis, model.name),
+    )
+
+
+def _side(record: Record, analysis: AnalysisFacts, scale: RatioScale) -> SideRow:
+    strategy = analysis.strategy(str(record["strategy"]))
+    model = strategy.model(str(record["model"])) if strategy is not None else None
+    overall = model.overall() if model is not None else None
+    get = (lambda name: math.nan) if overall is None else (lambda name: float(overall[name]))
+    ends = tuple(float(record[name]) for name in ("estimate", "ci_low", "ci_high"))
+    beside = get("estimate"), get("ci_low_model"), get("ci_high_model")
+    return SideRow(
+        str(record["strategy"]),
+        ROW_SET_WORDS.get(str(record["row_set"]), str(record["row_set"])),
+        numbers.whole(record["rows"]),
+        numbers.whole(record["studies"]),
+        numbers.percent_with_interval(*ends),
+        numbers.number(get("df")),
+        numbers.percent_interval(*beside[1:]),
+        numbers.percent_interval(get("pi_low"), get("pi_high")),
+        scale.bar(*ends),
+        scale.bar(*beside),
+        record["refused"] if isinstance(record["refused"], str) else "",
+        bool(record["primary"]),
+    )
+
+
+def _fitted(analysis: AnalysisFacts, name: str) -> list[tuple[StrategyFacts, ModelFacts]]:
+    pairs = [(strategy, strategy.model(name)) for strategy in analysis.strategies]
+    return [(s, model) for s, model in pairs if model is not None and not model.refused]
+
+
+def _heterogeneity(analysis: AnalysisFacts, name: str) -> Shown:
+    heads = (
+        "Strategy", "#Q", "#df", "#p", "#I² in all", "#Typical sampling var.",
+        "#CVH", "#M", "#Log-likelihood",
+    )  # fmt: skip
+    rows = []
+    for strategy, model in _fitted(analysis, name):
+        for item in records(model.heterogeneity):
+            likelihood = float(model.coefficients["log_likelihood"].iloc[0])
+            rows.append(
+                row(
+                    (
+                        strategy.name,
+                        numbers.number(item["q"]),
+                        numbers.number(item["q_df"]),
+                        numbers.p_value(item["q_p"]),
+                        numbers.share(item["i2_total"]),
+                        numbers.number(item["typical_variance"]),
+                        numbers.number(item["cvh"]),
+                        numbers.number(item["m"]),
+                        numbers.number(likelihood, 5),
+                    )
+                )
+            )
+    return shown("How much true effects differ, under each strategy", heads, rows)
+
+
+def _components(analysis: AnalysisFacts, name: str) -> Shown:
+    heads = ("Strategy", "Level", "#Variance", "#SD", "#I²", "Note")
+    rows = []
+    for strategy, model in _fitted(analysis, name):
+        for item in records(model.components):
+            rows.append(row((strategy.name, *_component(item))))
+    return shown("Variance between true effects, by level of dependence", heads, rows)
+
+
+def _component(item: Record) -> tuple[str, ...]:
+    variance = float(item["variance"])
+    words = {"study": "between studies", "row": "between rows of a study"}
+    return (
+        words.get(str(item["level"]), str(item["level"])),
+        numbers.number(variance),
+        numbers.number(math.sqrt(variance)) if variance >= 0 else numbers.NOT_KNOWN,
+        numbers.share(item["i2"]),
+        "estimated as exactly zero" if item["at_zero"] else "",
+    )
