@@ -111,16 +111,19 @@ def _work(root: Path, cores: int, outcome: Outcome, watch: Watcher) -> None:
     environment = {**os.environ, **dict.fromkeys(THREAD_VARIABLES, "1")}
     errors = root / "cache" / "logs" / "worker.log"
     errors.parent.mkdir(parents=True, exist_ok=True)
-    with errors.open("wb") as error_file:
-        worker = subprocess.Popen(
-            [sys.executable, "-m", "drystone.driving.worker", str(cores)],
+    command = [sys.executable, "-m", "drystone.driving.worker", str(cores)]
+    with (
+        errors.open("wb") as error_file,
+        subprocess.Popen(
+            command,
             cwd=root,
             env=environment,
             stdin=subprocess.PIPE,
             stdout=subprocess.PIPE,
             stderr=error_file,
             start_new_session=True,
-        )
+        ) as worker,
+    ):
         try:
             _listen(worker, outcome, watch)
             code = worker.wait()
