@@ -8,10 +8,10 @@ from scipy.linalg import solve_triangular
 
 from drystone.maths.mixed_model.criterion import Estimator
 from drystone.maths.mixed_model.derivatives import expected_information
-from drystone.maths.mixed_model.identify import check_identified
+from drystone.maths.mixed_model.identify import check_bounded, check_identified
 from drystone.maths.mixed_model.optimise import Path, maximise
 from drystone.maths.mixed_model.prepare import Prepared
-from drystone.maths.mixed_model.problem import SCALE, Floats
+from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY, Floats
 from drystone.maths.mixed_model.refuse import (
     InvalidProblemError,
     NotConvergedError,
@@ -22,7 +22,7 @@ CONVENTIONS: dict[Estimator, str] = {
     "REML": "-(n-p)/2 ln(2 pi) - ln|S|/2 - ln|X'S^-1 X|/2 + ln|X'X|/2 - r'S^-1 r/2",
     "ML": "-n/2 ln(2 pi) - ln|S|/2 - r'S^-1 r/2",
 }
-#: Up to this many rows every start is tried; above, one start.
+#: Up to this many rows every start is tried; above, the first two.
 SMALL = 1000
 #: Ends whose log-likelihoods differ by less than this are the same maximum.
 SAME_END = 1e-6
@@ -153,6 +153,7 @@ def fit(
     kept = dict(held or {})
     _check_held(prepared, kept)
     check_identified(prepared)
+    check_bounded(prepared, estimator)
     fixed = np.array([name in kept for name in prepared.term_names], dtype=bool)
     chosen = [_vector(prepared, start) for start in starts] or _own_starts(prepared)
     for start in chosen:
@@ -180,22 +181,28 @@ def _seen(start: Floats, others: list[Floats]) -> bool:
 
 
 def _own_starts(prepared: Prepared) -> list[Floats]:
-    """Shares of the ordinary least-squares excess variance, the even split first."""
+    """Splits of the ordinary least-squares excess variance, and a row level that starts tiny.
+
+    Unlike variances or strong known correlations can give the likelihood a second maximum at row
+    variances of the size of the smallest eigenvalue of V, which only a climb from below finds.
+    """
     free = prepared.rows - prepared.width
     variances = prepared.rotation.variances
     noise = (variances.sum() - (prepared.basis**2 @ variances).sum()) / free
     spread = float(prepared.response @ prepared.response) / free
     excess = max(spread - noise, 0.05 * spread, 1e-3 * noise)
-    shares = [(0.5, 0.5), (0.95, 0.05), (0.05, 0.95), (1e-3, 1e-3), (2.0, 2.0)]
+    tiny = max(float(variances.min()), 1e-12 * noise)
+    levels = [(0.5, 0.5), (0.95, tiny / excess), (0.95, 0.05), (0.05, 0.95), (2.0, 2.0)]
     if prepared.rows > SMALL:
-        shares = shares[:1]
-    return [_start(prepared, excess, share) for share in shares]
+        levels = levels[:2]
+    return [_start(prepared, excess * study, excess * row) for study, row in levels]
 
 
-def _start(prepared: Prepared, excess: float, share: tuple[float, float]) -> Floats:
-    levels = [name for name in prepared.term_names if name != SCALE]
-    parts = dict(zip(levels, share if len(levels) > 1 else (sum(share),), strict=False))
-    return np.array([parts[n] * excess if n in parts else 1.0 for n in prepared.term_names])
+def _start(prepared: Prepared, study: float, row: float) -> Floats:
+    values = {STUDY: study, ROW: row, SCALE: 1.0}
+    if ROW not in prepared.term_names:
+        values[STUDY] += row
+    return np.array([values[name] for name in prepared.term_names])
 
 
 def _report(prepared: Prepared, estimator: Estimator, paths: list[Path], held: np.ndarray) -> Fit:

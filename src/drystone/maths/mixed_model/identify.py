@@ -11,11 +11,15 @@ from typing import NoReturn
 
 import numpy as np
 
-from drystone.maths.mixed_model.criterion import Evaluation, evaluate
+from drystone.maths.mixed_model.criterion import Estimator, Evaluation, evaluate
 from drystone.maths.mixed_model.derivatives import expected_information
 from drystone.maths.mixed_model.prepare import Prepared
-from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY
-from drystone.maths.mixed_model.refuse import FlatLikelihoodError, LevelsIndistinguishableError
+from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY, Ints
+from drystone.maths.mixed_model.refuse import (
+    FlatLikelihoodError,
+    LevelsIndistinguishableError,
+    SingularCovarianceError,
+)
 
 #: Correlations this close to one, and shares this small, are rounding error.
 SAME = 1e-9
@@ -48,6 +52,40 @@ def check_identified(prepared: Prepared) -> None:
     values, vectors = np.linalg.eigh(gram / np.outer(scale, scale))
     if values[0] <= SAME:
         _refuse_alike([name for k, name in enumerate(names) if abs(vectors[k, 0]) > 1e-3], prepared)
+
+
+def check_bounded(prepared: Prepared, estimator: Estimator) -> None:
+    """Refuse perfectly correlated rows whose responses agree perfectly.
+
+    A row level at zero then has infinite likelihood: the rows are copies of each other. Where they
+    disagree, a row level above zero is needed and there is no harm.
+
+    Raises
+    ------
+    SingularCovarianceError
+        If the likelihood has no upper bound; names the rows.
+    """
+    null = np.flatnonzero((prepared.rotation.variances == 0.0) & (np.abs(prepared.ones) < SAME))
+    if not len(null):
+        return
+    design, response = prepared.basis[:, null].T, prepared.response[null]
+    fitted, _, rank, _ = np.linalg.lstsq(design, response, rcond=SAME)
+    left = np.linalg.norm(response - design @ fitted)
+    carried = rank if estimator == "REML" else 0
+    if len(null) > carried and left <= SAME * np.linalg.norm(prepared.response):
+        rows = _rows_of_blocks(prepared, null)
+        raise SingularCovarianceError(
+            f"Rows {', '.join(map(str, rows))} are perfectly correlated and agree perfectly: "
+            "they are copies of each other, and the likelihood has no maximum.",
+            rows=rows,
+        )
+
+
+def _rows_of_blocks(prepared: Prepared, places: Ints) -> list[int]:
+    """Caller's row numbers of the rotated blocks that hold `places`."""
+    held = [block for rows in prepared.rotation.members for block in rows]
+    touched = [block for block in held if np.isin(block, places).any()]
+    return sorted(int(row) for block in touched for row in prepared.order[block])
 
 
 def _at_unit_covariance(prepared: Prepared) -> tuple[Prepared, Evaluation]:

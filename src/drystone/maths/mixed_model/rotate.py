@@ -73,7 +73,7 @@ def rotate(known: KnownCovariance, labels: Ints) -> Rotation:
         blocks = _blocks(known, rows)
         values, axes = np.linalg.eigh(blocks)
         _check_definite(values, axes, blocks, labels[rows])
-        variances[rows] = np.maximum(values, 0.0)
+        variances[rows] = np.where(values > _rounding(values), values, 0.0)
         members.append(rows)
         vectors.append(axes)
     return Rotation(tuple(members), tuple(vectors), variances)
@@ -113,9 +113,15 @@ def _blocks(known: KnownCovariance, rows: Ints) -> Floats:
     return blocks
 
 
+def _rounding(values: Floats) -> Floats:
+    """Size of rounding error in the eigenvalues of each block, shape (blocks, 1)."""
+    size: Floats = ROUNDING * values.shape[1] * values[:, -1:]
+    return size
+
+
 def _check_definite(values: Floats, axes: Floats, blocks: Floats, labels: Ints) -> None:
     # eigh returns eigenvalues in ascending order
-    negative = np.flatnonzero(values[:, 0] < -ROUNDING * len(values[0]) * values[:, -1])
+    negative = np.flatnonzero(values[:, 0] < -_rounding(values)[:, 0])
     if not len(negative):
         return
     worst = int(negative[np.argmin(values[negative, 0])])
