@@ -1,13 +1,25 @@
-"""Looks through a workbook before anything else opens it."""
+"""Looks through a workbook before anything else opens it.
+
+The reader behind this guard holds every cell of the used rectangle in memory and reads error
+values and formulas without a stored value as blanks; so both are looked for here.
+"""
 
 from __future__ import annotations
 
-import io
+import posixpath
 import zipfile
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 
+from drystone.sheet import limits
 from drystone.sheet.problems import SheetProblem
 from drystone.sheet.raw import Broken
+from drystone.sheet.scan_ods import ContentScan
+from drystone.sheet.scan_stream import Listener, Meter, stream
+from drystone.sheet.scan_xlsx import NameScan, SheetScan, TextScan
+from drystone.sheet.zip_directory import open_zip
+
+_WORKBOOK, _RELATIONS = "xl/workbook.xml", "xl/_rels/workbook.xml.rels"
 
 
 @dataclass(frozen=True)
@@ -20,18 +32,108 @@ class Inspection:
     macros : True when the workbook holds macros
     """
 
-    broken: dict[str, dict[tuple[int, int], Broken]] = field(default_factory=dict)
+    broken: Mapping[str, dict[tuple[int, int], Broken]] = field(default_factory=dict)
     macros: bool = False
 
 
 def inspect(content: bytes, file: str) -> Inspection:
-    """Look through the workbook ``content``.
+    """Look through the workbook ``content``; ``file`` is what messages call it.
 
     Raises
     ------
     SheetProblem
-        When it is no workbook.
+        When it is no workbook, an old, encrypted or damaged one, or larger inside than a sheet
+        of comparisons can be.
     """
-    if not zipfile.is_zipfile(io.BytesIO(content)):
-        raise SheetProblem("is no workbook; save it as .xlsx", file)
-    return Inspection()
+    with open_zip(content, file) as archive:
+        names = set(archive.namelist())
+        if _WORKBOOK in names:
+            broken = _inspect_xlsx(archive, Meter(file))
+        elif "content.xml" in names:
+            broken = _inspect_ods(archive, Meter(file))
+        else:
+            raise SheetProblem(
+                "is a zip file but no .xlsx or .ods workbook; open it in a spreadsheet program "
+                "and save it as .xlsx",
+                file,
+            )
+    macros = any(name.lower().endswith("vbaproject.bin") for name in names)
+    return Inspection(broken, macros)
+
+
+def _inspect_xlsx(
+    archive: zipfile.ZipFile, meter: Meter
+) -> dict[str, dict[tuple[int, int], Broken]]:
+    names = _sheet_names(archive, meter)
+    sheets: dict[str, SheetScan] = {}
+    texts = TextScan()
+    for part in archive.infolist():
+        path = part.filename
+        if path in ("xl/workbook.bin", "content.xml"):
+            raise SheetProblem("is two kinds of workbook in one; save it as .xlsx", meter.file)
+
+        def listener(root: str, path: str = path) -> Listener | None:
+            if root == "sst" or path.casefold() == "xl/sharedstrings.xml":
+                return texts
+            sheets[path] = SheetScan(names.get(path, path), meter)
+            return sheets[path]
+
+        stream(archive, part, meter, listener)
+    longest = max(texts.lengths, default=0)
+    if longest * sum(scan.shared_cells for scan in sheets.values()) > limits.MOST_TEXT:
+        _count_texts(archive, meter, sheets, texts)
+    return {scan.name: scan.broken for scan in sheets.values() if scan.broken}
+
+
+def _count_texts(
+    archive: zipfile.ZipFile, meter: Meter, sheets: Mapping[str, SheetScan], texts: TextScan
+) -> None:
+    """Add up the shared texts cell by cell, which is only needed when some are long."""
+    again = Meter(meter.file)
+    for path, scan in sheets.items():
+        counted = SheetScan(scan.name, again, texts.lengths)
+        stream(archive, archive.getinfo(path), again, lambda _, counted=counted: counted)  # type: ignore[misc]
+
+
+def _inspect_ods(
+    archive: zipfile.ZipFile, meter: Meter
+) -> dict[str, dict[tuple[int, int], Broken]]:
+    content = ContentScan(meter)
+    for part in archive.infolist():
+        if part.filename == "META-INF/manifest.xml":
+            _refuse_encrypted(archive, part, meter)
+
+    def listener(root: str) -> Listener | None:
+        return content if root == "document-content" else None
+
+    for part in archive.infolist():
+        stream(archive, part, meter, listener if part.filename == "content.xml" else _ignored)
+    return content.broken
+
+
+def _ignored(_: str) -> Listener | None:
+    return None
+
+
+def _refuse_encrypted(archive: zipfile.ZipFile, part: zipfile.ZipInfo, meter: Meter) -> None:
+    with archive.open(part) as packed:
+        if b"encryption-data" in packed.read(2_000_000):
+            raise SheetProblem(
+                "is encrypted; open it in a spreadsheet program and save it without a password",
+                meter.file,
+            )
+
+
+def _sheet_names(archive: zipfile.ZipFile, meter: Meter) -> dict[str, str]:
+    """Sheet names by the path of the part that holds the sheet."""
+    sheets, targets = NameScan("sheet", "name"), NameScan("Relationship", "Target")
+    for path, scan in ((_WORKBOOK, sheets), (_RELATIONS, targets)):
+        if path in archive.namelist():
+            stream(archive, archive.getinfo(path), meter, lambda _, scan=scan: scan)  # type: ignore[misc]
+    names: dict[str, str] = {}
+    for key, name in sheets.found.items():
+        target = targets.found.get(key, "")
+        base = "/" if target.startswith("xl/") else "/xl"
+        path = posixpath.normpath(posixpath.join(base, target)).lstrip("/")
+        names[path] = name
+    return names

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 import unicodedata
+from functools import lru_cache
 
 from drystone.sheet.raw import ERROR_LITERALS, Broken, Cell, show
 
@@ -16,6 +17,8 @@ MISSING_NUMBER = frozenset(
 
 MISSING_TEXT = frozenset({"", "NA", "N/A", "n/a", "N.A.", "n.a.", "-", "--", "–", "—", "."})
 """Words that stand for a missing text; 'Na' may be sodium and 'none' a level."""
+
+LONG = 100  # characters; longer texts are not worth remembering, and no number is as long
 
 _PLAIN = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?", re.ASCII)
 _NUMBER = r"[-+−–]?\d[\d.,\s']*"
@@ -51,7 +54,7 @@ def parse_number(cell: Cell) -> tuple[float, str]:
     (nan, 'has a decimal comma')
     """
     if isinstance(cell, str):
-        return _from_text(cell)
+        return _from_text(cell) if len(cell) < LONG else (math.nan, "is not a number")
     if isinstance(cell, bool):
         return math.nan, "is true or false, not a number"
     if isinstance(cell, float | int):
@@ -75,7 +78,13 @@ def parse_text(cell: Cell) -> tuple[str | None, bool]:
     """
     if isinstance(cell, Broken):
         return None, False
-    text = show(cell).strip()
+    typed = cell if isinstance(cell, str) else show(cell)
+    return _tidy(typed) if len(typed) < LONG else _tidy.__wrapped__(typed)
+
+
+@lru_cache(maxsize=8192)
+def _tidy(typed: str) -> tuple[str | None, bool]:
+    text = typed.strip()
     clean = " ".join(text.split()) if text.isascii() else _clean(text)
     if clean in MISSING_TEXT:
         return None, False
@@ -89,6 +98,7 @@ def broken_words(cell: Broken) -> str:
     return "is an error value"
 
 
+@lru_cache(maxsize=8192)
 def _from_text(cell: str) -> tuple[float, str]:
     text = cell.strip()
     if _PLAIN.fullmatch(text):
@@ -97,10 +107,9 @@ def _from_text(cell: str) -> tuple[float, str]:
         return math.nan, ""
     if text in ERROR_LITERALS:
         return math.nan, "is an error value"
-    if len(text) < 100:
-        for pattern, wrong in _TROUBLES:
-            if pattern.fullmatch(text):
-                return math.nan, wrong
+    for pattern, wrong in _TROUBLES:
+        if pattern.fullmatch(text):
+            return math.nan, wrong
     return math.nan, "is not a number"
 
 

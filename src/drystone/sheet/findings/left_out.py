@@ -32,11 +32,12 @@ def unknown_studies(draft: Draft) -> Iterator[Note]:
     if not known:
         return
     told: set[str] = set()
+    hinted = 20  # the search for the nearest name is slow
     for row, study in enumerate(draft.text("study")):
         if study is None or study in known or study in told:
             continue
         told.add(study)
-        hint = nearest(study, known) if len(known) < 2000 else "look for a typing error"
+        hint = nearest(study, known) if len(told) <= hinted else "look for a typing error"
         yield draft.note(
             levels.WARN,
             "study not in the studies table",

@@ -11,6 +11,8 @@ from drystone.sheet.headers import plain
 from drystone.sheet.notes import Note
 from drystone.words import levels, scales
 
+MOST_HINTS = 50  # the search for the nearest name is slow
+
 
 def check_outcomes(draft: Draft) -> Iterator[Note]:
     """Missing studies; missing and unknown outcomes; one outcome fills an absent column."""
@@ -59,7 +61,7 @@ def check_units(draft: Draft) -> Iterator[Note]:
     """Rows whose unit is not the outcome's."""
     for name, rows in _rows_of(draft).items():
         outcome = draft.settings.outcomes.get(name)
-        if outcome is None:
+        if outcome is None or outcome.scale != scales.RATIO:
             continue
         units = {row: unit for row in rows if (unit := draft.text("unit")[row]) is not None}
         if not units:
@@ -101,7 +103,7 @@ def _unknown(draft: Draft, names: list[str]) -> Iterator[Note]:
             yield draft.note(levels.FIXED, "outcome spelling", "outcome", row, wrong, todo)
             continue
         if typed not in hints:
-            hints[typed] = nearest(typed, names)[:300]
+            hints[typed] = nearest(typed, names)[:300] if len(hints) < MOST_HINTS else names[0]
         yield draft.note(
             levels.STOP,
             "unknown outcome",

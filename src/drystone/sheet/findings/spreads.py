@@ -139,10 +139,13 @@ def _plural(numbers: ArmNumbers) -> Mask:
 
 
 def _arm_numbers(draft: Draft, arm: str) -> ArmNumbers:
-    columns = ("mean", "n", "spread", "lower", "upper")
     percent = draft.number("confidence_percent")
     return ArmNumbers(
-        *(draft.number(f"{arm}_{what}") for what in columns),
+        mean=draft.number(f"{arm}_mean"),
+        n=draft.number(f"{arm}_n"),
+        spread=draft.number(f"{arm}_spread"),
+        lower=draft.number(f"{arm}_lower"),
+        upper=draft.number(f"{arm}_upper"),
         confidence_percent=np.where(np.isnan(percent), 95.0, percent),
     )
 
