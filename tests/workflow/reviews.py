@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-import json
 from pathlib import Path
 
 import pandas as pd
 import yaml
+from reference.formula_sheet import sheet
 
 from drystone.driving.front import Outcome, run
 from drystone.driving.plan import make_plan
@@ -50,8 +50,7 @@ def summary(root: Path) -> pd.DataFrame:
 
 def mini_sheet() -> pd.DataFrame:
     """The twelve invented rows of the formula sheet, in the columns of the template."""
-    sheet = json.loads((REFERENCE / "checks.json").read_text())["sheet"]
-    rows = pd.DataFrame(sheet["rows"], columns=sheet["columns"])
+    rows = pd.DataFrame(sheet()["rows"], columns=sheet()["columns"])
     return pd.DataFrame(
         {
             "row_id": rows["row"],
@@ -69,9 +68,3 @@ def mini_sheet() -> pd.DataFrame:
             "treatment_n": rows["n_t"],
         }
     )
-
-
-def check(name: str) -> dict:
-    """Inputs and expected numbers of one entry of the formula sheet."""
-    entries = json.loads((REFERENCE / "checks.json").read_text())["checks"]
-    return next(entry for entry in entries if entry["id"] == name)

@@ -9,7 +9,8 @@ from __future__ import annotations
 import numpy as np
 import pandas as pd
 import pytest
-from workflow.reviews import check, mini_sheet, run_review, summary, write_review
+from reference.formula_sheet import check
+from workflow.reviews import mini_sheet, run_review, summary, write_review
 
 ORDERS = ("first", "second")
 

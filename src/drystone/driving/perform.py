@@ -161,7 +161,7 @@ def _refuse_mixed(plan: Plan) -> None:
         record = plan.record(step)
         if name != "publish" and (record is None or record["digest"] != plan.keys[name]["digest"]):
             raise StepFailed(
-                f"sheet or config changed while the run was going ({step.phrase}); run again"
+                f"sheet, config or code changed while the run was going ({step.phrase}); run again"
             )
 
 

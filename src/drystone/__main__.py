@@ -1,0 +1,5 @@
+"""``python -m drystone`` is the same as ``drystone``."""
+
+from drystone.cli import main
+
+main()
