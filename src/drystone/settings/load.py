@@ -67,20 +67,17 @@ def _sentence(fault: Any, location: Location) -> str:
 
 
 def _known_keys(parent: Location) -> list[str]:
+    """Keys known at ``parent``; names and list positions on the way down are no fields."""
     model: Any = Settings
     for step in parent:
-        if isinstance(model, type) and issubclass(model, BaseModel):
-            field = model.model_fields.get(str(step))
-            model = field.annotation if field else None
-        model = _inner_model(model)
-    return list(model.model_fields) if isinstance(model, type) else []
+        field = model.model_fields.get(str(step))
+        if field is not None:
+            model = _inner_model(field.annotation) or model
+    return list(model.model_fields)
 
 
-def _inner_model(annotation: Any) -> Any:
+def _inner_model(annotation: Any) -> type[BaseModel] | None:
     if isinstance(annotation, type) and issubclass(annotation, BaseModel):
         return annotation
-    for part in get_args(annotation):
-        inner = _inner_model(part)
-        if inner is not None:
-            return inner
-    return annotation if get_args(annotation) else None
+    found = (_inner_model(part) for part in get_args(annotation))
+    return next((model for model in found if model is not None), None)

@@ -87,6 +87,8 @@ class Analysis(Part):
     @field_validator("outcome", mode="before")
     @classmethod
     def _outcome_list(cls, value: Any) -> Any:
+        if value == []:
+            raise ValueError("needs at least one outcome")
         return _text_list(value)
 
     @field_validator("where", "where_not", mode="before")
@@ -243,7 +245,14 @@ def _strategy(item: Any) -> Any:
         return {"name": item, "use": item}
     if isinstance(item, dict) and len(item) == 1 and "use" not in item and "name" not in item:
         name, options = next(iter(item.items()))
-        return {"name": name, "use": name, **(options or {})}
+        given = options or {}
+        fixed = [key for key in ("name", "use") if key in given] if isinstance(given, dict) else []
+        if not isinstance(given, dict) or fixed:
+            raise ValueError(
+                f"'{name}' holds {fixed or given!r}; to give a strategy a name of its own write "
+                f"{{name: ..., use: {name}}}"
+            )
+        return {"name": name, "use": name, **given}
     return item
 
 
