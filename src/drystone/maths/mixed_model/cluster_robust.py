@@ -4,10 +4,6 @@ Bell & McCaffrey 2002 (Survey Methodology 28:169); Tipton 2015 (Psychol Methods 
 doi 10.1037/met0000011); Pustejovsky & Tipton 2018 (J Bus Econ Stat 36:672,
 doi 10.1080/07350015.2016.1247004). The working covariance is the fitted one.
 
-With Phi = L L' in a cluster, H = (L^-1 X) M (L^-1 X)' and S = L' L, the matrix to be inverted is
-B = S (I - H) S. Its inverse root comes from the singular values of (I - H)^(1/2) S, which keeps
-the digits that squaring would lose; coefficients that only this cluster carries make I - H
-singular, and the number of zero singular values is then known, not guessed (own derivation).
 Everything is invariant under the rotation of the rows, so the rotated axes are used throughout.
 """
 
@@ -18,6 +14,8 @@ import numpy as np
 from numpy.typing import ArrayLike
 from scipy.linalg import solve_triangular
 
+from drystone.maths.mixed_model.adjust_large import adjust_large
+from drystone.maths.mixed_model.adjust_small import Levers, adjust_small
 from drystone.maths.mixed_model.criterion import Evaluation, evaluate
 from drystone.maths.mixed_model.fit import Fit
 from drystone.maths.mixed_model.inference import Inference, contrast_rows, infer
@@ -30,8 +28,8 @@ from drystone.maths.mixed_model.refuse import (
     TooFewStudiesError,
 )
 
-#: A direction of the design with less than this share left outside the cluster is the cluster's.
-OWNED = 1e-10
+#: Clusters up to this many rows are handled with dense matrices.
+LARGEST_DENSE = 80
 #: Matrix entries handled at a time.
 CHUNK = 4_000_000
 
@@ -123,7 +121,9 @@ def cluster_robust(
     bread = _bread(at)
     residual = prepared.response - at.coordinates @ prepared.basis
     for which, rows in _batches(codes):
-        parts.fill(which, _adjust(prepared, at, bread, rows), prepared.basis[:, rows], residual)
+        adjust = adjust_small if rows.shape[1] <= LARGEST_DENSE else adjust_large
+        levers = adjust(prepared, at, bread, rows)
+        parts.fill(which, levers, prepared.basis[:, rows], residual[rows])
     return _assemble(prepared, fit, bread, parts)
 
 
@@ -140,14 +140,11 @@ class _Parts:
         square = (clusters, width, width)
         return _Parts(np.empty((clusters, width)), np.empty(square), np.empty(square))
 
-    def fill(
-        self, which: Ints, adjusted: tuple[Ints, Floats, Floats], basis: Floats, residual: Floats
-    ) -> None:
-        rows, lever, root = adjusted
-        self.scores[which] = np.einsum("bnp,bn->bp", lever, residual[rows])
-        self.overlaps[which] = np.einsum("abn,bnp->bap", basis, lever)
-        half = np.matmul(root.transpose(0, 2, 1), lever)
-        self.variances[which] = np.matmul(half.transpose(0, 2, 1), half)
+    def fill(self, which: Ints, levers: Levers, basis: Floats, residual: Floats) -> None:
+        """Put in clusters of one size; `basis` is (p, b, n), `residual` is (b, n)."""
+        self.scores[which] = np.einsum("bnp,bn->bp", levers.columns, residual)
+        self.overlaps[which] = np.einsum("abn,bnp->bap", basis, levers.columns)
+        self.variances[which] = levers.variances
 
 
 def _bread(at: Evaluation) -> Floats:
@@ -194,46 +191,6 @@ def _batches(codes: Ints) -> Iterator[tuple[Ints, Ints]]:
         step = max(1, CHUNK // int(size) ** 2)
         for k in range(0, len(which), step):
             yield which[k : k + step], rows[k : k + step]
-
-
-def _adjust(
-    prepared: Prepared, at: Evaluation, bread: Floats, rows: Ints
-) -> tuple[Ints, Floats, Floats]:
-    """U = A W X M, shape (clusters, size, p), and the lower root L of Phi."""
-    root = _lower(_covariances(prepared, at, rows))
-    design = np.linalg.solve(root, prepared.basis[:, rows].transpose(1, 2, 0))
-    half = design @ solve_triangular(at.factor, np.eye(prepared.width))
-    inverse_root = _inverse_root(root, half)
-    return rows, root @ (inverse_root @ (design @ bread)), root
-
-
-def _lower(matrices: Floats) -> Floats:
-    return np.asarray(np.linalg.cholesky(matrices), dtype=np.float64)
-
-
-def _covariances(prepared: Prepared, at: Evaluation, rows: Ints) -> Floats:
-    ones, segment = prepared.ones[rows], prepared.segment[rows]
-    same = segment[:, :, None] == segment[:, None, :]
-    made: Floats = at.weights.between_variance * same * ones[:, :, None] * ones[:, None, :]
-    place = np.arange(rows.shape[1])
-    made[:, place, place] += 1.0 / at.weights.precision[rows]
-    return made
-
-
-def _inverse_root(root: Floats, half: Floats) -> Floats:
-    """Moore-Penrose B^(-1/2), where I - H = I - half half' and half has p columns."""
-    left, share, _ = np.linalg.svd(half, full_matrices=False)
-    rest = 1.0 - share**2
-    owned = rest <= OWNED
-    kept = np.sqrt(np.where(owned, 0.0, rest))
-    square = np.matmul(root.transpose(0, 2, 1), root)
-    lowered = square - np.matmul(left * (1.0 - kept)[:, None, :], left.transpose(0, 2, 1) @ square)
-    _, values, axes = np.linalg.svd(lowered)
-    size = values.shape[1]
-    alive = np.arange(size) < size - owned.sum(axis=1)[:, None]
-    inverse = np.where(alive, 1.0 / np.where(alive, values, 1.0), 0.0)
-    made: Floats = np.matmul(axes.transpose(0, 2, 1) * inverse[:, None, :], axes)
-    return made
 
 
 def _assemble(prepared: Prepared, fit: Fit, bread: Floats, parts: _Parts) -> ClusterRobust:
