@@ -12,7 +12,7 @@ BAND = "#d5e3ee"
 WIDTH = 420
 BARE: Spec = {"title": None, "domain": False, "ticks": False}
 SCHEMA = "https://vega.github.io/schema/vega-lite/v5.json"  # a name, never fetched
-PERCENT_AXIS = "format(100 * (exp(datum.value) - 1), '+.0f')"
+PERCENT_AXIS = "abs(datum.value) < 1e-9 ? '0' : format(100 * (exp(datum.value) - 1), '+.0f')"
 CONFIG: Spec = {
     "background": "white",
     "font": "Liberation Sans, Arial, sans-serif",

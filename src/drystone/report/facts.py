@@ -7,6 +7,7 @@ empty but always carry their columns.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Any
@@ -204,6 +205,11 @@ def main_strategy(facts: ReportFacts, analysis: AnalysisFacts) -> StrategyFacts:
 def main_model(strategy: StrategyFacts) -> ModelFacts | None:
     """First model without moderators, which the first screen speaks about, or None."""
     return next((model for model in strategy.models if model.is_overall), None)
+
+
+def number_of(row: pd.Series | None, name: str) -> float:
+    """Number in ``row``; NaN when there is no row."""
+    return math.nan if row is None else float(row[name])
 
 
 def records(table: pd.DataFrame) -> list[Record]:

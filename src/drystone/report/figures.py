@@ -115,7 +115,7 @@ def _line(label: str, item: LadderStudy | LadderRow, ladder: Ladder) -> Spec:
         "ci_low": item.low,
         "ci_high": item.high,
         "hollow": item.gappy,
-        "beyond": "" if inside else numbers.percent(item.effect),
+        "beyond": "" if inside else f"{numbers.percent(item.effect)}, off the scale",
     }
 
 

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-import math
-from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 
 import pandas as pd
 
@@ -17,6 +16,7 @@ from drystone.report.facts import (
     StrategyFacts,
     main_model,
     main_strategy,
+    number_of,
 )
 from drystone.report.flow import RowFlow, row_flow
 from drystone.report.scale import Bar, Tick, ratio_scale
@@ -57,7 +57,7 @@ def found(facts: ReportFacts, analysis: AnalysisFacts) -> Found:
     model = main_model(strategy)
     overall = None if model is None else model.overall()
     level = facts.settings.inference.confidence_percent
-    get = _reader(overall)
+    get = partial(number_of, overall)
     ends = get("ci_low"), get("ci_high")
     return Found(
         _question(facts, analysis),
@@ -73,10 +73,6 @@ def found(facts: ReportFacts, analysis: AnalysisFacts) -> Found:
         _verdict(facts, analysis, model),
         analysis_cautions(facts, analysis),
     )
-
-
-def _reader(overall: pd.Series | None) -> Callable[[str], float]:
-    return lambda name: math.nan if overall is None else float(overall[name])
 
 
 def _question(facts: ReportFacts, analysis: AnalysisFacts) -> str:
@@ -95,7 +91,7 @@ def _picture(overall: pd.Series | None) -> Picture | None:
         return None
     names = ("ci_low", "ci_high", "pi_low", "pi_high")
     scale = ratio_scale([], [float(overall[name]) for name in names])
-    get = _reader(overall)
+    get = partial(number_of, overall)
     return Picture(
         scale.ticks(),
         scale.at(0.0),
@@ -111,7 +107,8 @@ def _basis(facts: ReportFacts, strategy: StrategyFacts, overall: pd.Series | Non
     studies = numbers.count(int(overall["studies"]), "study", "studies")
     kind = facts.settings.inference.interval.replace(" ", "-")
     return (
-        f"From {rows} of {studies}. Missing spreads: {strategy.name}. Interval: {kind}, "
+        f"From {rows} of {studies}. Missing spreads: {strategy.name} "
+        f"({sentences.strategy_gloss(strategy.settings)}). Interval: {kind}, "
         f"{numbers.number(float(overall['df']), 3)} degrees of freedom."
     )
 

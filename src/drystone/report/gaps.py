@@ -8,6 +8,7 @@ import pandas as pd
 
 from drystone.report import numbers
 from drystone.report.facts import Record, records
+from drystone.report.ladder import year_beside
 from drystone.words import arms
 
 STATE_WORDS = {
@@ -60,8 +61,9 @@ def gap_studies(
         cells = tuple(_cell(record, anchors) for record in records(group))
         missing, total = _arms_of(group)
         year = numbers.typed(years.get(name))
-        found.append(GapStudy(str(name), year, cells, missing, total))
-    return tuple(sorted(found, key=lambda study: (study.year or "9999", study.name)))
+        study = GapStudy(str(name), year_beside(str(name), year), cells, missing, total)
+        found.append(((year or "9999", str(name)), study))
+    return tuple(study for _, study in sorted(found, key=lambda pair: pair[0]))
 
 
 def gap_counts(rows: pd.DataFrame) -> tuple[GapCount, ...]:

@@ -128,6 +128,11 @@ def _overall_bar(scale: RatioScale, overall: pd.Series | None, kind: str) -> Bar
     )
 
 
+def year_beside(name: str, year: str) -> str:
+    """Year to print beside a study's name; blank when the name says it already."""
+    return "" if year in name else year
+
+
 def _years(studies: pd.DataFrame) -> dict[str, str]:
     known = studies.dropna(subset=["year"])
     return {
@@ -145,7 +150,7 @@ def _study(
     low, high = summary.mean - times * summary.se, summary.mean + times * summary.se
     return LadderStudy(
         summary.study,
-        years.get(summary.study, ""),
+        year_beside(summary.study, years.get(summary.study, "")),
         summary.mean,
         low,
         high,
@@ -219,7 +224,7 @@ def _arm(record: Record, arm: str) -> str:
         spread += " (from another row)"
     elif record[f"{arm}_sd_pooled"] and not math.isnan(sd):
         spread += " (one for both arms)"
-    return f"{numbers.number(mean, 4)}; {spread}; n {numbers.number(n)}"
+    return f"{numbers.number(mean, 4)}; {spread}; n {numbers.amount(n)}"
 
 
 def _borrowed(used: Record) -> str:

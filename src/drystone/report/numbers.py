@@ -70,6 +70,11 @@ def number(value: float, digits: int = 3) -> str:
     return _fixed(value, max(0, digits - 1 - size))
 
 
+def amount(value: float) -> str:
+    """Number of things: without decimals when it is whole, else with three digits."""
+    return whole(value) if _known(value) and value == round(value) else number(value)
+
+
 def number_interval(low: float, high: float, digits: int = 3) -> str:
     """Two numbers, for example '0.04 to 0.19'."""
     if not (_known(low) and _known(high)):
@@ -131,7 +136,7 @@ def _fixed(value: float, digits: int) -> str:
 
 def _with_plus(text: str, value: float) -> str:
     is_zero = not any(c in "123456789" for c in text)
-    return f"+{text}" if value > 0 and not is_zero else text
+    return f"+{text}" if value > 0 and text[0].isdigit() and not is_zero else text
 
 
 def _digits_alone(value: float) -> int:

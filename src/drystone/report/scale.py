@@ -12,6 +12,7 @@ from drystone.report.numbers import MINUS, percent_interval
 
 TICKS = (-99, -95, -90, -80, -65, -50, -35, -20, -10, 0, 10, 25, 50, 100, 200, 400, 900, 2900, 9900)
 FINE_TICKS = (-8, -6, -4, -2, 0, 2, 4, 6, 8, 10)
+FINEST_TICKS = (-2, -1.5, -1, -0.5, 0, 0.5, 1, 1.5, 2)
 CLOSEST_TICKS = 9.0  # percent of the width, so that labels do not touch
 
 
@@ -73,9 +74,10 @@ class RatioScale:
 
     def ticks(self) -> tuple[Tick, ...]:
         """Round percent changes on the scale, zero always among them, none too close."""
-        fine = self.high - self.low < 0.25
+        span = self.high - self.low
+        marks = FINEST_TICKS if span < 0.05 else FINE_TICKS if span < 0.25 else TICKS
         kept = [_tick(self, 0)] if self.low <= 0 <= self.high else []
-        for percent in sorted(FINE_TICKS if fine else TICKS, key=abs):
+        for percent in sorted(marks, key=abs):
             log_ratio = math.log1p(percent / 100)
             far = all(abs(self.at(log_ratio) - tick.at) >= CLOSEST_TICKS for tick in kept)
             if self.low <= log_ratio <= self.high and far:
@@ -86,12 +88,16 @@ class RatioScale:
 def ratio_scale(estimates: Iterable[float], must_show: Iterable[float]) -> RatioScale:
     """Scale that holds zero, ``must_show`` and the bulk of ``estimates``.
 
-    The outermost 2 % of estimates may be cut, so that one odd row does not flatten all others.
+    Estimates beyond three interquartile ranges may be cut (Tukey 1977, Exploratory Data Analysis,
+    outer fences), so that one odd row does not flatten all others.
     """
     known = np.array([x for x in estimates if math.isfinite(x)])
     ends = [x for x in must_show if math.isfinite(x)] + [0.0]
     if known.size:
-        ends += [float(x) for x in np.quantile(known, [0.02, 0.98])]
+        lower, upper = np.quantile(known, [0.25, 0.75])
+        reach = 3 * max(upper - lower, 0.05)
+        bulk = known[(known >= lower - reach) & (known <= upper + reach)]
+        ends += [float(bulk.min()), float(bulk.max())]
     low, high = min(ends), max(ends)
     room = max(0.08 * (high - low), 0.02)
     return RatioScale(low - room, high + room)
@@ -102,7 +108,7 @@ def describe(scale: RatioScale) -> str:
     return f"{percent_interval(scale.low, scale.high)} %"
 
 
-def _tick(scale: RatioScale, percent: int) -> Tick:
+def _tick(scale: RatioScale, percent: float) -> Tick:
     sign = MINUS if percent < 0 else "+" if percent > 0 else ""
     value = math.log1p(percent / 100)
-    return Tick(scale.at(value), value, f"{sign}{abs(percent)}", percent == 0)
+    return Tick(scale.at(value), value, f"{sign}{abs(percent):g}", percent == 0)

@@ -10,6 +10,8 @@ import pandas as pd
 
 from drystone.report import numbers
 from drystone.report.facts import records
+from drystone.settings.model import Strategy
+from drystone.words import strategies
 
 SIZE_FACTOR = 1.5  # common practice, no source: a change of size that a reader would call one
 
@@ -102,6 +104,15 @@ def ratio_meaning(flipped: int, rows: int) -> str:
     if flipped == rows:
         return f"{turned}: {read}."
     return f"{turned} in {numbers.count(flipped, 'row')} of {numbers.whole(rows)}: there, {read}."
+
+
+def strategy_gloss(settings: Strategy) -> str:
+    """What a strategy does with missing spreads, in a few words."""
+    return {
+        strategies.COMPLETE_CASES: "rows that lack an SD are dropped",
+        strategies.MISSING_CASES: "arms without SD borrow the average CV",
+        strategies.ALL_CASES: "every arm uses the average CV",
+    }[settings.use]
 
 
 def filters(where: dict[str, tuple[str, ...]], where_not: dict[str, tuple[str, ...]]) -> str:

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
+from functools import partial
 
 from drystone.report import numbers
 from drystone.report.facts import (
@@ -13,9 +13,11 @@ from drystone.report.facts import (
     ReportFacts,
     StrategyFacts,
     main_model,
+    number_of,
     records,
 )
 from drystone.report.scale import Bar, RatioScale, Tick, ratio_scale
+from drystone.report.sentences import strategy_gloss
 from drystone.report.tables_shown import Shown, row, shown
 from drystone.words import strategies
 
@@ -24,12 +26,15 @@ ROW_SET_WORDS = {
     strategies.COMPLETE_ROWS: "rows with both SDs",
 }
 
+LEVEL_WORDS = {"study": "Between studies", "row": "Between rows of a study"}
+
 
 @dataclass(frozen=True)
 class SideRow:
     """One strategy in the comparison."""
 
     strategy: str
+    gloss: str
     row_set: str
     rows: str
     studies: str
@@ -79,11 +84,12 @@ def _side(record: Record, analysis: AnalysisFacts, scale: RatioScale) -> SideRow
     strategy = analysis.strategy(str(record["strategy"]))
     model = strategy.model(str(record["model"])) if strategy is not None else None
     overall = model.overall() if model is not None else None
-    get = (lambda name: math.nan) if overall is None else (lambda name: float(overall[name]))
+    get = partial(number_of, overall)
     ends = tuple(float(record[name]) for name in ("estimate", "ci_low", "ci_high"))
     beside = get("estimate"), get("ci_low_model"), get("ci_high_model")
     return SideRow(
         str(record["strategy"]),
+        "" if strategy is None else strategy_gloss(strategy.settings),
         ROW_SET_WORDS.get(str(record["row_set"]), str(record["row_set"])),
         numbers.whole(record["rows"]),
         numbers.whole(record["studies"]),
@@ -117,7 +123,7 @@ def _heterogeneity(analysis: AnalysisFacts, name: str) -> Shown:
                     (
                         strategy.name,
                         numbers.number(item["q"]),
-                        numbers.number(item["q_df"]),
+                        numbers.amount(item["q_df"]),
                         numbers.p_value(item["q_p"]),
                         numbers.share(item["i2_total"]),
                         numbers.number(item["typical_variance"]),
@@ -131,21 +137,16 @@ def _heterogeneity(analysis: AnalysisFacts, name: str) -> Shown:
 
 
 def _components(analysis: AnalysisFacts, name: str) -> Shown:
-    heads = ("Strategy", "Level", "#Variance", "#SD", "#I²", "Note")
+    fitted = _fitted(analysis, name)
+    levels = list(dict.fromkeys(level for _, m in fitted for level in m.components["level"]))
+    heads = ("Strategy", *(f"#{LEVEL_WORDS.get(level, level)}" for level in levels))
     rows = []
-    for strategy, model in _fitted(analysis, name):
-        for item in records(model.components):
-            rows.append(row((strategy.name, *_component(item))))
-    return shown("Variance between true effects, by level of dependence", heads, rows)
+    for strategy, model in fitted:
+        by_level = {item["level"]: _component(item) for item in records(model.components)}
+        rows.append(row((strategy.name, *(by_level.get(level, "") for level in levels))))
+    return shown("Variance between true effects, on the log scale, by level", heads, rows)
 
 
-def _component(item: Record) -> tuple[str, ...]:
-    variance = float(item["variance"])
-    words = {"study": "between studies", "row": "between rows of a study"}
-    return (
-        words.get(str(item["level"]), str(item["level"])),
-        numbers.number(variance),
-        numbers.number(math.sqrt(variance)) if variance >= 0 else numbers.NOT_KNOWN,
-        numbers.share(item["i2"]),
-        "estimated as exactly zero" if item["at_zero"] else "",
-    )
+def _component(item: Record) -> str:
+    variance = "exactly 0" if item["at_zero"] else numbers.number(float(item["variance"]))
+    return f"{variance} (I² {numbers.share(item['i2'])})"

@@ -20,6 +20,7 @@ from drystone.report.facts import (
 from drystone.report.gaps import GapStudy, gap_counts, gap_studies
 from drystone.report.ladder import Ladder, build_ladder
 from drystone.report.links import Links
+from drystone.report.sentences import listed
 from drystone.report.spread import SpreadPicture, spread_pictures
 from drystone.report.tables_shown import Row, Shown, row, shown
 
@@ -49,7 +50,7 @@ def why(facts: ReportFacts, analysis: AnalysisFacts, links: Links) -> Why:
         gap_studies(analysis.slice, facts.studies, links.of(analysis)),
         _gap_table(analysis),
         spread_pictures(analysis.slice),
-        tuple(_averages(s) for s in _distinct(analysis) if len(s.averages)),
+        tuple(_averages(group) for group in _groups(analysis)),
         tuple(_moderator_tables(facts, analysis, strategy)),
     )
 
@@ -73,24 +74,28 @@ def _gap_table(analysis: AnalysisFacts) -> Shown:
     return shown("Physical arms with and without an SD; a shared arm counts once", heads, rows)
 
 
-def _distinct(analysis: AnalysisFacts) -> list[StrategyFacts]:
-    """Strategies whose averages differ from those already listed."""
-    kept: list[StrategyFacts] = []
+def _groups(analysis: AnalysisFacts) -> list[list[StrategyFacts]]:
+    """Strategies that share one table of averages, together."""
+    groups: list[list[StrategyFacts]] = []
     for strategy in analysis.strategies:
-        if not any(strategy.averages.equals(other.averages) for other in kept):
-            kept.append(strategy)
-    return kept
+        same = [group for group in groups if group[0].averages.equals(strategy.averages)]
+        if same:
+            same[0].append(strategy)
+        elif len(strategy.averages):
+            groups.append([strategy])
+    return groups
 
 
-def _averages(strategy: StrategyFacts) -> Shown:
+def _averages(group: list[StrategyFacts]) -> Shown:
+    names = listed([f"'{strategy.name}'" for strategy in group])
     heads = (
         "Outcome", "Side", "How the average was taken", "#Average CV", "#Reporting arms",
         "#Largest share", "Arm with that share", "Note",
     )  # fmt: skip
-    rows = [_average(item) for item in records(strategy.averages)]
+    rows = [_average(item) for item in records(group[0].averages)]
     return shown(
-        f"Averages of the coefficient of variation behind '{strategy.name}'; the versions that "
-        "were plugged in are in bold",
+        f"Averages of the coefficient of variation behind {names}; the versions that were plugged "
+        "in are in bold",
         heads,
         rows,
     )
@@ -165,12 +170,15 @@ def _across(analysis: AnalysisFacts, model: ModelFacts) -> Shown:
     table = analysis.side_by_side[analysis.side_by_side["model"] == model.name]
     names = list(dict.fromkeys(table["strategy"]))
     cells: dict[tuple[str, str], str] = {}
+    refused = {item["strategy"] for item in records(table) if isinstance(item["refused"], str)}
     for item in records(table):
-        refused = isinstance(item["refused"], str) and item["refused"]
         text = numbers.percent_with_interval(item["estimate"], item["ci_low"], item["ci_high"])
-        cells[item["coefficient"], item["strategy"]] = "refused" if refused else text
+        cells[item["coefficient"], item["strategy"]] = text
     wanted = [str(name) for name in model.coefficients["coefficient"]]
-    rows = [row((name, *(cells.get((name, s), "") for s in names))) for name in wanted]
+    rows = [
+        row((name, *("refused" if s in refused else cells.get((name, s), "") for s in names)))
+        for name in wanted
+    ]
     return shown(
         f"Model '{model.name}' over the strategies, as percent",
         ("Coefficient", *(f"#{name}" for name in names)),
