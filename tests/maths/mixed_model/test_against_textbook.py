@@ -158,3 +158,16 @@ def test_another_response_on_the_same_preparation(problem):
     reused = fit(prepare(problem).with_response(y))
     np.testing.assert_allclose(reused.log_likelihood, fit(fresh).log_likelihood, rtol=1e-12)
     assert model_based(reused).degrees_of_freedom[0] == fresh.studies - fresh.width
+
+
+@settings(max_examples=30, deadline=None, derandomize=True)
+@given(problems())
+def test_taking_rows_takes_their_part_of_everything(problem):
+    kept = problem.study != problem.study[0]
+    left = problem.take(kept)
+    np.testing.assert_array_equal(
+        textbook.known_matrix(left), textbook.known_matrix(problem)[np.ix_(kept, kept)]
+    )
+    np.testing.assert_array_equal(left.X, problem.X[kept])
+    np.testing.assert_array_equal(left.y, problem.y[kept])
+    np.testing.assert_array_equal(problem.take(np.flatnonzero(kept)).study, problem.study[kept])

@@ -259,3 +259,13 @@ def test_questions_the_model_cannot_answer():
         lambda: fit(prepared, held={"row": -0.1}),
     ):
         assert _refused(act).reason == "invalid_problem"
+
+
+def test_rows_that_all_lie_on_their_fitted_values():
+    flat = _problem(y=np.full(8, 0.3))
+    prepared = prepare(flat)
+    fitted = fit(prepared)
+    assert fitted.at_zero == {"study": True, "row": True}
+    assert _refused(lambda: cluster_robust(prepared, fitted)).reason == "no_residuals"
+    scaled = _problem(y=np.full(8, 0.3), terms=("scale",))
+    assert _refused(lambda: fit(prepare(scaled))).reason == "singular_covariance"

@@ -13,6 +13,8 @@ Use:
     study_effects(prepared, fitted)        # predicted deviations of the studies
     profile_interval(prepared, fitted, "study")
     zero_test(prepared, fitted, "study")
+    fit_partly_scaled(problem, marked)     # a factor for the variances of marked rows
+    prepare(problem.take(rows))            # the same model without a study
 
 Levels are `study`, `row`, and `scale` (an estimated factor of V); any subset, or none. Functions
 that return one entry per coefficient take contrast rows, shape (c, p), as well. Rows go in and
@@ -30,6 +32,11 @@ from drystone.maths.mixed_model.inference import (
     model_based,
     residual_scale,
     scaled_by_residuals,
+)
+from drystone.maths.mixed_model.partly_scaled import (
+    PartlyScaled,
+    fit_partly_scaled,
+    scale_rows,
 )
 from drystone.maths.mixed_model.predict import (
     Prediction,
@@ -54,6 +61,7 @@ __all__ = [
     "Fit",
     "Inference",
     "KnownCovariance",
+    "PartlyScaled",
     "Prediction",
     "Prepared",
     "Problem",
@@ -64,11 +72,13 @@ __all__ = [
     "ZeroTest",
     "cluster_robust",
     "fit",
+    "fit_partly_scaled",
     "model_based",
     "prediction_interval",
     "prepare",
     "profile_interval",
     "residual_scale",
+    "scale_rows",
     "scaled_by_residuals",
     "study_effects",
     "zero_test",

@@ -24,12 +24,15 @@ from drystone.maths.mixed_model.problem import Floats, Ints
 from drystone.maths.mixed_model.refuse import (
     ClustersCutStudiesError,
     InvalidProblemError,
+    NoResidualsError,
     SingularCovarianceError,
     TooFewStudiesError,
 )
 
 #: Clusters up to this many rows are handled with dense matrices.
 LARGEST_DENSE = 80
+#: Residuals below this share of the largest response are rounding error.
+ROUNDING = 1e-13
 #: Matrix entries handled at a time.
 CHUNK = 4_000_000
 
@@ -112,6 +115,8 @@ def cluster_robust(
         If the fitted covariance links rows of different clusters.
     TooFewStudiesError
         If there is only one cluster.
+    NoResidualsError
+        If every row lies exactly on its fitted value.
     """
     at = evaluate(prepared, fit.theta, fit.estimator)
     if at is None:
@@ -120,6 +125,7 @@ def cluster_robust(
     parts = _Parts.empty(int(codes.max()) + 1, prepared.width)
     bread = _bread(at)
     residual = prepared.response - at.coordinates @ prepared.basis
+    _check_residuals(prepared, residual)
     for which, rows in _batches(codes):
         adjust = adjust_small if rows.shape[1] <= LARGEST_DENSE else adjust_large
         levers = adjust(prepared, at, bread, rows)
@@ -150,6 +156,14 @@ class _Parts:
 def _bread(at: Evaluation) -> Floats:
     half = solve_triangular(at.factor, np.eye(len(at.factor)))
     return np.asarray(half @ half.T)
+
+
+def _check_residuals(prepared: Prepared, residual: Floats) -> None:
+    if np.abs(residual).max() <= ROUNDING * np.abs(prepared.problem.y).max():
+        raise NoResidualsError(
+            "Every row lies exactly on its fitted value, so the rows say nothing about "
+            "standard errors of their own."
+        )
 
 
 def _codes(prepared: Prepared, clusters: ArrayLike | None) -> Ints:

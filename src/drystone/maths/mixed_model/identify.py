@@ -23,6 +23,8 @@ from drystone.maths.mixed_model.refuse import (
 
 #: Correlations this close to one, and shares this small, are rounding error.
 SAME = 1e-9
+#: Residuals below this share of the largest response are rounding error.
+ROUNDING = 1e-13
 
 
 def check_identified(prepared: Prepared) -> None:
@@ -65,6 +67,7 @@ def check_bounded(prepared: Prepared, estimator: Estimator) -> None:
     SingularCovarianceError
         If the likelihood has no upper bound; names the rows.
     """
+    _check_scale_bounded(prepared)
     null = np.flatnonzero((prepared.rotation.variances == 0.0) & (np.abs(prepared.ones) < SAME))
     if not len(null):
         return
@@ -78,6 +81,15 @@ def check_bounded(prepared: Prepared, estimator: Estimator) -> None:
             f"Rows {', '.join(map(str, rows))} are perfectly correlated and agree perfectly: "
             "they are copies of each other, and the likelihood has no maximum.",
             rows=rows,
+        )
+
+
+def _check_scale_bounded(prepared: Prepared) -> None:
+    exact = np.abs(prepared.response).max() <= ROUNDING * np.abs(prepared.problem.y).max()
+    if SCALE in prepared.term_names and exact:
+        raise SingularCovarianceError(
+            "Every row lies exactly on its fitted value, so a factor of the sampling variances "
+            "runs to zero and the likelihood has no maximum."
         )
 
 

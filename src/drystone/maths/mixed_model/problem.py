@@ -112,6 +112,28 @@ class Problem:
         _check_shapes(self)
         _check_same_study(self)
 
+    def take(self, rows: ArrayLike) -> "Problem":
+        """Return the problem of some rows only, such as all but one study.
+
+        Parameters
+        ----------
+        rows : array of int or bool
+            Row numbers to keep, each once, or a mask of shape (K,).
+        """
+        kept = np.arange(len(self.y))[np.asarray(rows)]
+        place = np.full(len(self.y), -1, dtype=np.intp)
+        place[kept] = np.arange(len(kept))
+        known = self.known
+        inside = (place[known.rows_i] >= 0) & (place[known.rows_j] >= 0)
+        left = KnownCovariance(
+            known.variances[kept],
+            place[known.rows_i[inside]],
+            place[known.rows_j[inside]],
+            known.covariances[inside],
+        )
+        X, study = self.X[kept], self.study[kept]
+        return Problem(self.y[kept], X, self.coefficient_names, study, left, self.terms)
+
     @property
     def term_names(self) -> tuple[str, ...]:
         """Names of the declared levels, in order."""

@@ -59,6 +59,9 @@ def profile_interval(
 ) -> ProfileInterval:
     """{v: 2 (l_max - l_profile(v)) <= chi-squared quantile}, other components re-estimated.
 
+    The piece of the set that holds the fitted maximum: where starts disagreed
+    (`Certificate.starts_agree`), the likelihood has other maxima and the set other pieces.
+
     Raises
     ------
     FlatLikelihoodError

@@ -98,6 +98,12 @@ class FlatLikelihoodError(Refusal):
     reason = "flat_likelihood"
 
 
+class NoResidualsError(Refusal):
+    """Rows that all lie exactly on the fitted values."""
+
+    reason = "no_residuals"
+
+
 class NotConvergedError(Refusal):
     """The search for the maximum did not end at one."""
 

@@ -51,6 +51,13 @@ class Rotation:
             turned[:, rows] = np.einsum("bji,cbi->cbj", vectors, columns[:, rows])
         return turned
 
+    def undo_diagonal(self, values: Floats) -> Floats:
+        """Diagonal, shape (K,), in the old axes of a matrix that is diag(values) in the new."""
+        turned = values.copy()
+        for rows, vectors in zip(self.members, self.vectors, strict=True):
+            turned[rows] = np.einsum("bij,bj->bi", vectors**2, values[rows])
+        return turned
+
 
 def rotate(known: KnownCovariance, labels: Ints) -> Rotation:
     """Diagonalise V.
