@@ -9,4 +9,6 @@ rule fill_spreads:
         averages=S + "/averages.parquet",
         ledger=S + "/ledger.parquet",
     run:
-        workflow_side.perform(PLAN, f"sampling/{wildcards.analysis}/{wildcards.strategy}")
+        workflow_side.perform(
+            PLAN, f"sampling/{wildcards.analysis}/{wildcards.strategy}"
+        )

@@ -24,7 +24,8 @@ class Effects:
 
 def theta(cv2: Array, n: Array) -> Array:
     """First-order sampling variance of a log mean: squared coefficient of variation over n."""
-    return np.asarray(cv2, dtype=float) / np.asarray(n, dtype=float)
+    found: Array = np.asarray(cv2, dtype=float) / np.asarray(n, dtype=float)
+    return found
 
 
 def log_ratio(mean_t: Array, mean_c: Array) -> Array:

@@ -97,12 +97,13 @@ _PLAIN = {f"tag:yaml.org,2002:{kind}" for kind in ("bool", "null", "int", "float
 
 def _refuse_shortcuts(text: str, name: str) -> None:
     for event in yaml.parse(text, Loader=_Loader):
-        line = event.start_mark.line + 1
+        line = event.start_mark.line + 1 if event.start_mark else None
         if isinstance(event, yaml.AliasEvent) or getattr(event, "anchor", None):
             raise ConfigProblem("uses an anchor or alias (& or *); write it out", name, line)
-        if getattr(event, "tag", None):
+        tag = getattr(event, "tag", None)
+        if tag:
             raise ConfigProblem(
-                f"uses the tag '{event.tag}'; a config holds plain values only", name, line
+                f"uses the tag '{tag}'; a config holds plain values only", name, line
             )
 
 

@@ -21,6 +21,7 @@ from drystone.maths.mixed_model import (
     Prepared,
     Problem,
     Refusal,
+    Term,
     cluster_robust,
     fit,
     model_based,
@@ -119,7 +120,8 @@ def _fitted(
     study, _ = pd.factorize(rows["study"], sort=True)
     known = known_covariance(rows, covariance)
     effect = rows["effect"].to_numpy(float)
-    problem = Problem(effect, design.matrix, design.names, study, known, analysis.levels)
+    terms = tuple(Term(level) for level in analysis.levels)
+    problem = Problem(effect, design.matrix, design.names, study, known, terms)
     prepared = prepare(problem)
     fitted = fit(prepared, inference.estimator)
     alone = is_intercept_only(formula) and design.names == (OVERALL,)

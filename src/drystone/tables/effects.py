@@ -1,5 +1,7 @@
 """Tables on the way from the sheet to the models; moderators are extra columns of the slice."""
 
+import pandera.pandas as pa
+
 from drystone.tables.columns import flag, number, schema, text, whole
 from drystone.words import arms
 
@@ -7,7 +9,7 @@ SD_SOURCES = ("own", "other row", "none")
 CV_SOURCES = ("own", "average")
 
 
-def _arm_slice(arm: str) -> dict:
+def _arm_slice(arm: str) -> dict[str, pa.Column]:
     return {
         f"{arm}_arm": text(f"physical {arm} arm, unique in the slice", required=True),
         f"{arm}_mean": number(f"mean of the {arm} arm", unit="outcome unit", required=True),
@@ -32,7 +34,7 @@ SLICE = schema("slice", "one comparison of one analysis", SLICE_COLUMNS)
 SHOWN_COLUMNS = ("control_label", "treatment_label", "sheet", "sheet_row", "date", "study_year")
 
 
-def _arm_effect(arm: str) -> dict:
+def _arm_effect(arm: str) -> dict[str, pa.Column]:
     return {
         f"{arm}_cv": number(f"SD / mean of the {arm} arm, blank when missing"),
         f"{arm}_theta": number(f"CV^2 / n of the {arm} arm, blank when missing"),
