@@ -73,3 +73,13 @@ def test_everything_can_be_reached_by_keyboard(window: Browser, pages: dict[str,
         ".filter(e => e.scrollWidth > e.clientWidth && e.tabIndex < 0).length"
     )
     assert unreachable == 0
+
+
+def test_closed_groups_are_printed(window: Browser, pages: dict[str, Path]) -> None:
+    window.open(pages["small"], 800)
+    visible = "document.querySelector('#ledger .group table').checkVisibility()"
+    assert not window.evaluate(visible)
+    window.call("Emulation.setEmulatedMedia", media="print")
+    printed = window.evaluate(visible)
+    window.call("Emulation.setEmulatedMedia", media="")
+    assert printed
