@@ -67,3 +67,27 @@ def score_and_informations(
     average = [[y @ P @ g @ P @ h @ P @ y / 2 for h in G] for g in G]
     expected = [[np.trace(T @ g @ T @ h) / 2 for h in G] for g in G]
     return np.array(score), np.array(average), np.array(expected)
+
+
+def wishart_degrees(
+    problem: Problem, theta: np.ndarray, contrasts: np.ndarray
+) -> tuple[float, np.ndarray]:
+    """Eta of Tipton & Pustejovsky 2015 by study, and the CR2 covariance, from the definition."""
+    X, y, Phi = problem.X, problem.y, covariance(problem, theta)
+    W = np.linalg.inv(Phi)
+    M = np.linalg.inv(X.T @ W @ X)
+    H = X @ M @ X.T @ W
+    root = np.linalg.inv(np.linalg.cholesky(contrasts @ M @ contrasts.T))
+    forces, meat = [], 0.0
+    for code in np.unique(problem.study):
+        j = np.flatnonzero(problem.study == code)
+        D = np.linalg.cholesky(Phi[np.ix_(j, j)]).T
+        values, axes = np.linalg.eigh(D @ (Phi[np.ix_(j, j)] - X[j] @ M @ X[j].T) @ D.T)
+        A = D.T @ (axes / np.sqrt(values)) @ axes.T @ D
+        lever = (np.eye(len(y)) - H)[j].T @ A @ W[np.ix_(j, j)] @ X[j] @ M
+        forces.append(lever @ contrasts.T @ root.T)
+        meat = meat + np.outer(lever.T @ y, lever.T @ y)
+    q = len(contrasts)
+    P = np.einsum("ias,ab,jbt->stij", np.array(forces), Phi, np.array(forces))
+    total = sum((P[s, s] * P[t, t] + P[s, t] * P[t, s]).sum() for s in range(q) for t in range(q))
+    return q * (q + 1) / total, meat

@@ -9,6 +9,8 @@ Use:
     fitted = fit(prepared, "REML")         # Fit: coefficients, covariance, components, certificate
     model_based(fitted)                    # t with studies - p
     cluster_robust(prepared, fitted).infer()             # CR2 by study, Satterthwaite df
+    cluster_robust(prepared, fitted).joint_test(rows)    # several contrasts at once
+    joint_test(fitted, rows)                             # the same, model-based
     prediction_interval(fitted)            # names its target
     study_effects(prepared, fitted)        # predicted deviations of the studies
     profile_interval(prepared, fitted, "study")
@@ -33,6 +35,7 @@ from drystone.maths.mixed_model.inference import (
     residual_scale,
     scaled_by_residuals,
 )
+from drystone.maths.mixed_model.joint import JointTest, joint_test
 from drystone.maths.mixed_model.partly_scaled import (
     PartlyScaled,
     fit_partly_scaled,
@@ -60,6 +63,7 @@ __all__ = [
     "ClusterRobust",
     "Fit",
     "Inference",
+    "JointTest",
     "KnownCovariance",
     "PartlyScaled",
     "Prediction",
@@ -73,6 +77,7 @@ __all__ = [
     "cluster_robust",
     "fit",
     "fit_partly_scaled",
+    "joint_test",
     "model_based",
     "prediction_interval",
     "prepare",

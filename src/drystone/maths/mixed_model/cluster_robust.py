@@ -19,6 +19,14 @@ from drystone.maths.mixed_model.adjust_small import Levers, adjust_small
 from drystone.maths.mixed_model.criterion import Evaluation, evaluate
 from drystone.maths.mixed_model.fit import Fit
 from drystone.maths.mixed_model.inference import Inference, contrast_rows, infer
+from drystone.maths.mixed_model.joint import (
+    JointTest,
+    check_denominator,
+    check_independent,
+    f_test,
+    wald_statistic,
+)
+from drystone.maths.mixed_model.moments import Moments, satterthwaite, wishart_degrees
 from drystone.maths.mixed_model.prepare import Prepared
 from drystone.maths.mixed_model.problem import Floats, Ints
 from drystone.maths.mixed_model.refuse import (
@@ -56,9 +64,7 @@ class ClusterRobust:
     clusters: int
     _fit: Fit
     _triangle: Floats
-    _bread: Floats
-    _overlaps: Floats
-    _variances: Floats
+    _moments: Moments
 
     @property
     def standard_errors(self) -> Floats:
@@ -68,8 +74,7 @@ class ClusterRobust:
     def satterthwaite(self, contrasts: ArrayLike) -> Floats:
         """Degrees of freedom, shape (c,), of contrast rows, shape (c, p)."""
         rows = np.atleast_2d(np.asarray(contrasts, dtype=np.float64))
-        turned = solve_triangular(self._triangle, rows.T, trans="T").T
-        return np.array([self._degrees(row) for row in turned])
+        return np.array([satterthwaite(self._moments, row) for row in self._turn(rows)])
 
     def infer(
         self, contrasts: ArrayLike | None = None, confidence_percent: float = 95.0
@@ -86,14 +91,30 @@ class ClusterRobust:
             "cluster-robust standard error (CR2), t with Satterthwaite degrees of freedom",
         )
 
-    def _degrees(self, row: Floats) -> float:
-        """(sum p_jj)^2 / sum p_ij^2 with p_ij = [i = j] d_j - t_i' M t_j."""
-        overlap = self._overlaps @ row
-        own = np.einsum("a,jab,b->j", row, self._variances, row)
-        shared = np.einsum("ja,ab,jb->j", overlap, self._bread, overlap)
-        total = self._bread @ (overlap.T @ overlap)
-        squares = own @ own - 2.0 * own @ shared + np.einsum("ab,ba->", total, total)
-        return float((own - shared).sum() ** 2 / squares) if squares > 0.0 else np.nan
+    def joint_test(self, contrasts: ArrayLike) -> JointTest:
+        """Approximate Hotelling test that contrast rows, shape (q, p), are all zero.
+
+        Tipton & Pustejovsky 2015 (J Educ Behav Stat 40:604, doi 10.3102/1076998615606099):
+        F = (eta - q + 1) / (eta q) Q on q and eta - q + 1 degrees of freedom.
+        """
+        rows = contrast_rows(self._fit, contrasts)[1]
+        check_independent(rows @ self._fit.covariance @ rows.T)
+        eta, q = self.wishart_degrees(rows), len(rows)
+        left = eta - q + 1.0 if self.clusters > q else 0.0
+        check_denominator(q, left)
+        wald = wald_statistic(rows @ self._fit.coefficients, rows @ self.covariance @ rows.T)
+        method = "cluster-robust covariance (CR2), approximate Hotelling F"
+        return f_test(wald * left / (eta * q), q, left, method)
+
+    def wishart_degrees(self, contrasts: ArrayLike) -> float:
+        """Degrees of freedom eta of the standardised covariance of contrast rows, (q, p)."""
+        rows = np.atleast_2d(np.asarray(contrasts, dtype=np.float64))
+        return wishart_degrees(self._moments, self._turn(rows))
+
+    def _turn(self, rows: Floats) -> Floats:
+        """Contrast rows in coordinates of the orthonormal basis."""
+        turned: Floats = solve_triangular(self._triangle, rows.T, trans="T").T
+        return turned
 
 
 def cluster_robust(
@@ -216,9 +237,7 @@ def _assemble(prepared: Prepared, fit: Fit, bread: Floats, parts: _Parts) -> Clu
         clusters=len(parts.scores),
         _fit=fit,
         _triangle=prepared.triangle,
-        _bread=bread,
-        _overlaps=parts.overlaps,
-        _variances=parts.variances,
+        _moments=Moments(bread, parts.overlaps, parts.variances),
     )
     degrees = made.satterthwaite(np.eye(prepared.width))
     object.__setattr__(made, "degrees_of_freedom", degrees)

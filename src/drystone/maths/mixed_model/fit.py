@@ -11,19 +11,21 @@ from drystone.maths.mixed_model.derivatives import expected_information
 from drystone.maths.mixed_model.identify import check_bounded, check_identified
 from drystone.maths.mixed_model.optimise import Path, maximise
 from drystone.maths.mixed_model.prepare import Prepared
-from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY, Floats
+from drystone.maths.mixed_model.problem import SCALE, Floats
 from drystone.maths.mixed_model.refuse import (
+    FlatLikelihoodError,
     InvalidProblemError,
     NotConvergedError,
     SingularCovarianceError,
 )
+from drystone.maths.mixed_model.starts import distinct, own_starts
 
 CONVENTIONS: dict[Estimator, str] = {
     "REML": "-(n-p)/2 ln(2 pi) - ln|S|/2 - ln|X'S^-1 X|/2 + ln|X'X|/2 - r'S^-1 r/2",
     "ML": "-n/2 ln(2 pi) - ln|S|/2 - r'S^-1 r/2",
 }
-#: Up to this many rows every start is tried; above, the first two.
-SMALL = 1000
+#: Curvature, relative to that of each component alone, that is rounding error.
+FLAT = 1e-10
 #: Ends whose log-likelihoods differ by less than this are the same maximum.
 SAME_END = 1e-6
 
@@ -155,10 +157,10 @@ def fit(
     check_identified(prepared)
     check_bounded(prepared, estimator)
     fixed = np.array([name in kept for name in prepared.term_names], dtype=bool)
-    chosen = [_vector(prepared, start) for start in starts] or _own_starts(prepared)
+    chosen = [_vector(prepared, start) for start in starts] or own_starts(prepared)
     for start in chosen:
         start[fixed] = [kept[name] for name in prepared.term_names if name in kept]
-    paths = [maximise(prepared, estimator, start, fixed) for start in _distinct(chosen)]
+    paths = [maximise(prepared, estimator, start, fixed) for start in distinct(chosen)]
     return _report(prepared, estimator, [path for path in paths if path is not None], fixed)
 
 
@@ -170,39 +172,6 @@ def _check_held(prepared: Prepared, held: Mapping[str, float]) -> None:
 
 def _vector(prepared: Prepared, components: Mapping[str, float]) -> Floats:
     return np.array([components[name] for name in prepared.term_names], dtype=np.float64)
-
-
-def _distinct(starts: list[Floats]) -> list[Floats]:
-    return [start for k, start in enumerate(starts) if not _seen(start, starts[:k])]
-
-
-def _seen(start: Floats, others: list[Floats]) -> bool:
-    return any(np.array_equal(start, other) for other in others)
-
-
-def _own_starts(prepared: Prepared) -> list[Floats]:
-    """Splits of the ordinary least-squares excess variance, and a row level that starts tiny.
-
-    Unlike variances or strong known correlations can give the likelihood a second maximum at row
-    variances of the size of the smallest eigenvalue of V, which only a climb from below finds.
-    """
-    free = prepared.rows - prepared.width
-    variances = prepared.rotation.variances
-    noise = (variances.sum() - (prepared.basis**2 @ variances).sum()) / free
-    spread = float(prepared.response @ prepared.response) / free
-    excess = max(spread - noise, 0.05 * spread, 1e-3 * noise)
-    tiny = max(float(variances.min()), 1e-12 * noise)
-    levels = [(0.5, 0.5), (0.95, tiny / excess), (0.95, 0.05), (0.05, 0.95), (2.0, 2.0)]
-    if prepared.rows > SMALL:
-        levels = levels[:2]
-    return [_start(prepared, excess * study, excess * row) for study, row in levels]
-
-
-def _start(prepared: Prepared, study: float, row: float) -> Floats:
-    values = {STUDY: study, ROW: row, SCALE: 1.0}
-    if ROW not in prepared.term_names:
-        values[STUDY] += row
-    return np.array([values[name] for name in prepared.term_names])
 
 
 def _report(prepared: Prepared, estimator: Estimator, paths: list[Path], held: np.ndarray) -> Fit:
@@ -266,5 +235,25 @@ def _component_covariance(
     free = np.flatnonzero(~held & (at.theta > 0.0))
     made = np.full_like(observed, np.nan)
     if len(free):
-        made[np.ix_(free, free)] = np.linalg.inv(observed[np.ix_(free, free)])
+        names = [prepared.term_names[k] for k in free]
+        made[np.ix_(free, free)] = invert_information(observed[np.ix_(free, free)], names)
     return made
+
+
+def invert_information(information: Floats, names: list[str]) -> Floats:
+    """Inverse of the information, or a refusal where the likelihood has no curvature.
+
+    Raises
+    ------
+    FlatLikelihoodError
+        If some combination of the components can change without changing the likelihood.
+    """
+    size = np.sqrt(np.maximum(np.diag(information), 0.0))
+    scaled = information / np.outer(size, size) if size.all() else np.zeros_like(information)
+    if np.linalg.eigvalsh(scaled)[0] <= FLAT:
+        raise FlatLikelihoodError(
+            f"The likelihood is flat at its maximum: {' and '.join(names)} cannot be estimated.",
+            levels=names,
+        )
+    inverse: Floats = np.linalg.inv(scaled) / np.outer(size, size)
+    return inverse

@@ -14,7 +14,6 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.optimize import brentq
 
 from drystone.maths.mixed_model.criterion import Estimator, evaluate, unwhiten
 from drystone.maths.mixed_model.fit import Fit, fit
@@ -73,6 +72,8 @@ def fit_partly_scaled(
     FlatLikelihoodError
         If the factor runs out of the range from 1/400 to 400.
     """
+    from scipy.optimize import brentq  # 0.2 s that most fits never need
+
     marked = _marked(problem, scaled)
     values = [_at(problem, marked, estimator, x)[1].log_likelihood for x in GRID]
     best = int(np.argmax(values))

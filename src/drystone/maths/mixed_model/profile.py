@@ -4,7 +4,6 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.optimize import brentq
 from scipy.special import chdtrc, chdtri
 
 from drystone.maths.mixed_model.fit import Fit, fit
@@ -116,4 +115,6 @@ def _bracket(above: Callable[[float], float], best: float, fitted: Fit) -> tuple
 
 
 def _root(above: Callable[[float], float], low: float, high: float) -> float:
+    from scipy.optimize import brentq  # 0.2 s that most fits never need
+
     return float(brentq(above, low, high, xtol=1e-15 * high, rtol=1e-13))
