@@ -92,7 +92,7 @@ def _set(row: str, column: str, value: str) -> Callable[[pd.DataFrame], pd.DataF
 
 def _chain(name: str, models: tuple[str, ...], of: tuple[str, ...] = STRATEGIES) -> set[str]:
     """All steps of one analysis below and with its slice."""
-    steps = {f"slice/{name}", f"effects/{name}", f"compare/{name}"}
+    steps = {f"slice/{name}", f"effects/{name}", f"compare/{name}", f"figures/{name}"}
     return steps | _strategies(name, models, of)
 
 
@@ -103,6 +103,7 @@ def _strategies(name: str, models: tuple[str, ...], of: tuple[str, ...]) -> set[
 
 YIELD = _chain("yield", ("overall", "crop"))
 PAGE = {"check", "report", "publish"}
+AFTER_FITS = {"compare/yield", "figures/yield", "report", "publish"}
 
 
 def _add_row(rows: pd.DataFrame) -> pd.DataFrame:
@@ -190,7 +191,8 @@ def test_strategy_option_reruns_that_strategy(review):
     config = {**CONFIG, "strategies": ["complete cases", "missing cases", _ALL_CASES_SQUARES]}
     write_config(review, config)
     of = ("all cases", "all cases on complete rows")
-    expected = {"compare/yield", "compare/cover", "report", "publish"}
+    expected = {"compare/yield", "compare/cover", "figures/yield", "figures/cover"}
+    expected |= {"report", "publish"}
     expected |= _strategies("yield", ("overall", "crop"), of)
     expected |= _strategies("cover", ("overall",), of)
     reason = next(r for r in explained(review) if r.step == "sampling/yield/all cases")
@@ -297,7 +299,7 @@ def test_body_of_one_stage_reruns_it_and_what_follows(copied, review):
     path = copied / "src/drystone/stages/compare_strategies.py"
     path.write_text(path.read_text().replace('"positive"', '"above zero"'))
     found = _run_copy(copied, review)
-    assert set(found["said"]) == {"compare/yield", "report", "publish"} == set(found["ran"])
+    assert set(found["said"]) == AFTER_FITS == set(found["ran"])
     wanted = ["the code of drystone.stages.compare_strategies changed"]
     assert found["said"]["compare/yield"] == wanted
 
@@ -307,5 +309,5 @@ def test_body_of_one_strategy_reruns_that_strategy(copied, review):
     path.write_text(path.read_text().replace("average=False", "average=bool(0)"))
     found = _run_copy(copied, review)
     expected = _strategies("yield", ("overall", "crop"), ("missing cases",))
-    expected |= {"compare/yield", "report", "publish"}
+    expected |= AFTER_FITS
     assert set(found["said"]) == expected == set(found["ran"])

@@ -7,6 +7,5 @@ rule render_report:
         results=upstream("report"),
     output:
         page="cache/report/report.html",
-        figures="cache/report/figures.json",
     run:
         workflow_side.perform(PLAN, "report")

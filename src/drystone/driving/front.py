@@ -74,11 +74,7 @@ def run(root: Path, cores: int, begin: Callable[[Plan], None], watch: Watcher) -
         plan.remember()
         if plan.pending:
             _work(root, cores, outcome, watch)
-            after = make_plan(root)
-            if not outcome.failures and not outcome.interrupted and after.pending:
-                left = ", ".join(item.step.phrase for item in after.pending.values())
-                outcome.failures.append(f"the sheet or the config changed meanwhile; left: {left}")
-            after.forget()
+            _look_back(root, plan, outcome)
     return outcome
 
 
@@ -97,6 +93,23 @@ def refuse_full_disk(root: Path) -> None:
                 f"only {free // 1000} kB are free on the disk of {root.name}; a run needs about "
                 f"{SPACE_NEEDED // 1_000_000} MB. Free some and run again; nothing was changed"
             )
+
+
+def _look_back(root: Path, plan: Plan, outcome: Outcome) -> None:
+    """Check that nothing is left to do, and say so when the review changed during the run."""
+    after = make_plan(root)
+    after.forget()
+    if outcome.failures or outcome.interrupted or not after.pending:
+        return
+    left = len(after.pending)
+    if after.keys != plan.keys:
+        outcome.notes.append(
+            "Sheet, config or code changed while the run was going; the results are of the state "
+            f"at its start. Run again for the {left} steps that the change touches."
+        )
+    else:
+        phrases = ", ".join(item.step.phrase for item in list(after.pending.values())[:3])
+        outcome.failures.append(f"the run ended, but {left} steps are not up to date: {phrases}")
 
 
 def _recover(root: Path) -> list[str]:

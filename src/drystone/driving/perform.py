@@ -136,6 +136,14 @@ def _compare(plan: Plan, step: Step) -> None:
     run(fits, settings.all_strategies(), settings.primary, target)
 
 
+def _figures(plan: Plan, step: Step) -> None:
+    from drystone.stages.draw_figures import run
+
+    plan.state.ensure()
+    target = plan.review.root / step.outputs[0]
+    run(plan.review.root, plan.review.settings, plan.state.folder, step.analysis, target)
+
+
 def _report(plan: Plan, step: Step) -> None:
     from drystone.stages.render_report import run
 
@@ -176,6 +184,7 @@ STAGES: dict[str, Stage] = {
     "fill_spreads": _sampling,
     "fit_model": _fit,
     "compare_strategies": _compare,
+    "draw_figures": _figures,
     "render_report": _report,
     "publish_results": _publish,
 }

@@ -144,9 +144,11 @@ class Plan:
         return {"step": step.name, "digest": digest(parts), "parts": parts}
 
     def _rows(self, step: Step) -> str:
-        if step.rows == "slice":
-            analyses = self.review.settings.all_analyses()
-            return self.state.slice_digest(analyses[step.analysis])
+        if step.rows in ("slice", "figures"):
+            analysis = self.review.settings.all_analyses()[step.analysis]
+            sliced = step.rows == "slice"
+            digest_of = self.state.slice_digest if sliced else self.state.figures_digest
+            return digest_of(analysis)
         return self.state.check_digest() if step.rows == "check" else self.state.facts_digest()
 
 

@@ -23,14 +23,13 @@ if TYPE_CHECKING:
 
 SHEET_CODE = ("drystone.sheet.intake", "drystone.sheet.readers", "drystone.stages.intake_store")
 DIGEST_CODE = ("drystone.stages.digest_rows", "drystone.stages.select_rows")
+LABELS = ("date", "control_label", "treatment_label")
 SHOWN_OF_ROWS = (
     "row_id",
     "study",
     "outcome",
     "species",
-    "date",
-    "control_label",
-    "treatment_label",
+    *LABELS,
     "sheet",
     "sheet_row",
 )
@@ -71,6 +70,11 @@ class SheetState:
     def facts_digest(self) -> str:
         """Digest of what the report shows of the sheet: findings, ledger, labels, addresses."""
         return self._digest("facts", self._facts_content)
+
+    def figures_digest(self, analysis: Analysis) -> str:
+        """Digest of what the figures of ``analysis`` show of the sheet besides its numbers."""
+        name = f"figures {digest(list(analysis.outcome))}"
+        return self._digest(name, lambda: self._figures_content(analysis))
 
     def table(self, name: str) -> pd.DataFrame:
         """One stored table of the intake; the sheet is read when it has not been yet."""
@@ -133,6 +137,14 @@ class SheetState:
         studies = self.table("studies").drop(columns="note")
         others = [self.table(name) for name in ("findings", "ledger", "derivations")]
         return [digest_table(table) for table in (shown, studies, *others)]
+
+    def _figures_content(self, analysis: Analysis) -> list[str]:
+        from drystone.stages.digest_rows import digest_table
+
+        rows = self.table("rows")
+        shown = rows.loc[rows["outcome"].isin(analysis.outcome), ["row_id", "study", *LABELS]]
+        studies = self.table("studies")[["study", "year"]]
+        return [digest_table(table.sort_values(list(table.columns))) for table in (shown, studies)]
 
 
 def sheet_state(review: Review, code: CodeIndex) -> SheetState:

@@ -26,7 +26,7 @@ class Step:
         because the part of their outcome that matters here stands in the key
     settings : the options that decide its result
     modules : its stage module, and modules that it loads by name
-    rows : which digest of the sheet it depends on: 'check', 'facts', 'slice' or ''
+    rows : which digest of the sheet it depends on: 'check', 'facts', 'figures', 'slice' or ''
     """
 
     name: str
@@ -66,15 +66,19 @@ def _steps(settings: Settings) -> Iterator[Step]:
         rows="check",
     )
     made: list[str] = []
+    drawn: list[str] = []
     for name, analysis in settings.all_analyses().items():
         for step in _analysis_steps(name, analysis, settings):
             made.append(step.name)
             yield step
+        figures = _figures_step(name, settings, tuple(s for s in made if s.split("/")[1] == name))
+        drawn.append(figures.name)
+        yield figures
     yield Step(
         "report",
         "render_report",
         "report",
-        ("cache/report/report.html", "cache/report/figures.json"),
+        ("cache/report/report.html",),
         upstream=tuple(made),
         beside=("check",),
         settings=settings.model_dump(),
@@ -86,7 +90,7 @@ def _steps(settings: Settings) -> Iterator[Step]:
         "publish_results",
         "results folder",
         ("cache/published.json",),
-        upstream=("check", "report"),
+        upstream=("check", "report", *drawn),
         modules=("drystone.stages.publish_results",),
     )
 
@@ -135,6 +139,21 @@ def _analysis_steps(name: str, analysis: Analysis, settings: Settings) -> Iterat
             "row sets": {key: [item.use, item.rows] for key, item in strategies.items()},
         },
         modules=("drystone.stages.compare_strategies",),
+        analysis=name,
+    )
+
+
+def _figures_step(name: str, settings: Settings, above: tuple[str, ...]) -> Step:
+    shown = settings.model_dump(include={"outcomes", "primary", "inference"})
+    return Step(
+        f"figures/{name}",
+        "draw_figures",
+        f"figures of {name}",
+        (f"cache/figures/{name}/list.json",),
+        upstream=above,
+        settings=shown,
+        modules=("drystone.stages.draw_figures",),
+        rows="figures",
         analysis=name,
     )
 

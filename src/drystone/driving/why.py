@@ -98,12 +98,12 @@ def _row_causes(plan: Plan, item: Pending) -> Iterator[str]:
     plan.state.ensure()
     columns = _columns_of(plan, item)
     old, new = load_table(folder, "rows"), plan.state.table("rows")
-    if item.step.rows == "slice":
+    if item.step.rows in ("slice", "figures"):
         wanted = plan.review.settings.all_analyses()[item.step.analysis].outcome
         old, new = old[old["outcome"].isin(wanted)], new[new["outcome"].isin(wanted)]
     letters = {name: entry[0] for name, entry in load_columns(plan.state.folder).items()}
     causes = list(_changed_rows(old, new, columns, letters))
-    if item.step.rows in ("check", "facts"):
+    if item.step.rows != "slice":
         studies = load_table(folder, "studies"), plan.state.table("studies")
         causes += list(_changed_studies(*studies))
     yield from _shortened(causes) or ["the sheet changed"]
@@ -111,7 +111,7 @@ def _row_causes(plan: Plan, item: Pending) -> Iterator[str]:
 
 def _columns_of(plan: Plan, item: Pending) -> list[str]:
     """Columns whose cells can be behind a change of this step's rows."""
-    from drystone.driving.states import SHOWN_OF_ROWS
+    from drystone.driving.states import LABELS, SHOWN_OF_ROWS
     from drystone.stages.select_rows import extra_columns
     from drystone.tables.comparisons import COLUMNS, NUMBERS_USED
 
@@ -120,6 +120,8 @@ def _columns_of(plan: Plan, item: Pending) -> list[str]:
         return everything
     if item.step.rows == "facts":
         return list(dict.fromkeys([*SHOWN_OF_ROWS, *NUMBERS_USED, *everything]))
+    if item.step.rows == "figures":
+        return ["study", *LABELS]
     analysis = plan.review.settings.all_analyses()[item.step.analysis]
     named = [*NUMBERS_USED, *extra_columns(analysis)]
     return [name for name in dict.fromkeys(named) if name in COLUMNS or name in everything]

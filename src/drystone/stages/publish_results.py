@@ -17,8 +17,9 @@ import pandas as pd
 
 from drystone.maths.log_ratio import percent_change
 from drystone.stages import collect
-from drystone.stages.render_report import versions
+from drystone.stages.draw_figures import figures_folder
 from drystone.stages.swap_folders import NEW, recover, swap
+from drystone.stages.versions import versions
 from drystone.tables.csv_store import write_csv
 from drystone.tables.store import read_table
 
@@ -42,7 +43,9 @@ def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
     write_csv(summary_table(root, settings), new / "summary.csv")
     _write_tables(root, settings, intake, new)
     shutil.copyfile(root / "cache" / "report" / "report.html", new / "report.html")
-    shutil.copytree(root / "cache" / "report" / "figures", new / "figures")
+    for name in settings.all_analyses():
+        copy = {"dirs_exist_ok": True, "ignore": shutil.ignore_patterns("list.json")}
+        shutil.copytree(figures_folder(root, name), new / "figures", **copy)
     manifest = _manifest(root, settings, new, run_id)
     (new / "manifest.json").write_text(json.dumps(manifest, indent=1), encoding="utf-8")
     swap(root)

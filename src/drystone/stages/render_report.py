@@ -1,41 +1,27 @@
-"""Report: reads all cached tables -> writes one offline HTML page and its figures."""
+"""Report: reads all cached tables -> writes one offline HTML page."""
 
 from __future__ import annotations
 
-import json
 import os
-import platform
-import shutil
-from importlib import metadata
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from drystone import __version__
 from drystone.report import facts as shown
-from drystone.report.figures import save_figures
 from drystone.report.page import render_page
 from drystone.stages import collect
 from drystone.stages.intake_store import load_table
+from drystone.stages.versions import versions
 from drystone.tables.store import read_table
 
 if TYPE_CHECKING:
     from drystone.settings.model import Analysis, Settings
 
-LIBRARIES = ("numpy", "scipy", "pandas", "pyarrow", "pandera", "snakemake")
-
 
 def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
-    """Write ``cache/report/report.html``, ``cache/report/figures/`` and their list."""
-    facts = gather(root, settings, intake, run_id)
+    """Write ``cache/report/report.html``."""
     target = root / "cache" / "report"
     target.mkdir(parents=True, exist_ok=True)
-    figures = target / "figures"
-    shutil.rmtree(figures, ignore_errors=True)
-    figures.mkdir()
-    save_figures(facts, figures)
-    _replace(target / "report.html", render_page(facts))
-    names = sorted(path.name for path in figures.iterdir())
-    _replace(target / "figures.json", json.dumps(names, indent=1))
+    _replace(target / "report.html", render_page(gather(root, settings, intake, run_id)))
 
 
 def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.ReportFacts:
@@ -52,22 +38,17 @@ def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.R
         derivations=read_table(checked / "derivations.parquet"),
         studies=read_table(checked / "studies.parquet"),
         analyses=tuple(
-            _analysis(root, settings, intake, name, analysis)
+            analysis_facts(root, settings, intake, name, analysis)
             for name, analysis in settings.all_analyses().items()
         ),
         demo=settings.invented,
     )
 
 
-def versions() -> dict[str, str]:
-    """Versions of what the numbers depend on."""
-    found = {"drystone": __version__, "Python": platform.python_version()}
-    return found | {name: metadata.version(name) for name in LIBRARIES}
-
-
-def _analysis(
+def analysis_facts(
     root: Path, settings: Settings, intake: Path, name: str, analysis: Analysis
 ) -> shown.AnalysisFacts:
+    """Facts of one analysis, from the cached tables."""
     folder = collect.analysis_folder(root, name)
     return shown.AnalysisFacts(
         name=name,
