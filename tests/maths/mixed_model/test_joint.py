@@ -16,7 +16,7 @@ from drystone.maths.mixed_model import (
     model_based,
     prepare,
 )
-from drystone.maths.mixed_model.fit import invert_information
+from drystone.maths.mixed_model.identify import invert_information
 from drystone.maths.mixed_model.refuse import (
     FlatLikelihoodError,
     InvalidProblemError,

@@ -8,12 +8,11 @@ from scipy.linalg import solve_triangular
 
 from drystone.maths.mixed_model.criterion import Estimator
 from drystone.maths.mixed_model.derivatives import expected_information
-from drystone.maths.mixed_model.identify import check_bounded, check_identified
+from drystone.maths.mixed_model.identify import check_bounded, check_identified, invert_information
 from drystone.maths.mixed_model.optimise import Path, maximise
 from drystone.maths.mixed_model.prepare import Prepared
 from drystone.maths.mixed_model.problem import SCALE, Floats
 from drystone.maths.mixed_model.refuse import (
-    FlatLikelihoodError,
     InvalidProblemError,
     NotConvergedError,
     SingularCovarianceError,
@@ -24,8 +23,6 @@ CONVENTIONS: dict[Estimator, str] = {
     "REML": "-(n-p)/2 ln(2 pi) - ln|S|/2 - ln|X'S^-1 X|/2 + ln|X'X|/2 - r'S^-1 r/2",
     "ML": "-n/2 ln(2 pi) - ln|S|/2 - r'S^-1 r/2",
 }
-#: Curvature, relative to that of each component alone, that is rounding error.
-FLAT = 1e-10
 #: Ends whose log-likelihoods differ by less than this are the same maximum.
 SAME_END = 1e-6
 
@@ -238,22 +235,3 @@ def _component_covariance(
         names = [prepared.term_names[k] for k in free]
         made[np.ix_(free, free)] = invert_information(observed[np.ix_(free, free)], names)
     return made
-
-
-def invert_information(information: Floats, names: list[str]) -> Floats:
-    """Inverse of the information, or a refusal where the likelihood has no curvature.
-
-    Raises
-    ------
-    FlatLikelihoodError
-        If some combination of the components can change without changing the likelihood.
-    """
-    size = np.sqrt(np.maximum(np.diag(information), 0.0))
-    scaled = information / np.outer(size, size) if size.all() else np.zeros_like(information)
-    if np.linalg.eigvalsh(scaled)[0] <= FLAT:
-        raise FlatLikelihoodError(
-            f"The likelihood is flat at its maximum: {' and '.join(names)} cannot be estimated.",
-            levels=names,
-        )
-    inverse: Floats = np.linalg.inv(scaled) / np.outer(size, size)
-    return inverse

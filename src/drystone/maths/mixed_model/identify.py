@@ -14,7 +14,7 @@ import numpy as np
 from drystone.maths.mixed_model.criterion import Estimator, Evaluation, evaluate
 from drystone.maths.mixed_model.derivatives import expected_information
 from drystone.maths.mixed_model.prepare import Prepared
-from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY, Ints
+from drystone.maths.mixed_model.problem import ROW, SCALE, STUDY, Floats, Ints
 from drystone.maths.mixed_model.refuse import (
     FlatLikelihoodError,
     LevelsIndistinguishableError,
@@ -23,6 +23,8 @@ from drystone.maths.mixed_model.refuse import (
 
 #: Correlations this close to one, and shares this small, are rounding error.
 SAME = 1e-9
+#: Curvature, relative to that of each component alone, that is rounding error.
+FLAT = 1e-10
 #: Residuals below this share of the largest response are rounding error.
 ROUNDING = 1e-13
 
@@ -117,3 +119,22 @@ def _refuse_alike(names: list[str], prepared: Prepared) -> NoReturn:
     if frozenset(names) == {STUDY, ROW} and prepared.studies < prepared.rows:
         why = "they act alike on every contrast that the coefficients leave free"
     raise LevelsIndistinguishableError(f"{joined} cannot be told apart: {why}.", levels=names)
+
+
+def invert_information(information: Floats, names: list[str]) -> Floats:
+    """Inverse of the information, or a refusal where the likelihood has no curvature.
+
+    Raises
+    ------
+    FlatLikelihoodError
+        If some combination of the components can change without changing the likelihood.
+    """
+    size = np.sqrt(np.maximum(np.diag(information), 0.0))
+    scaled = information / np.outer(size, size) if size.all() else np.zeros_like(information)
+    if np.linalg.eigvalsh(scaled)[0] <= FLAT:
+        raise FlatLikelihoodError(
+            f"The likelihood is flat at its maximum: {' and '.join(names)} cannot be estimated.",
+            levels=names,
+        )
+    inverse: Floats = np.linalg.inv(scaled) / np.outer(size, size)
+    return inverse

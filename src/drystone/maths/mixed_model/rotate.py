@@ -9,8 +9,6 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.sparse import coo_matrix
-from scipy.sparse.csgraph import connected_components
 
 from drystone.maths.mixed_model.problem import Floats, Ints, KnownCovariance
 from drystone.maths.mixed_model.refuse import NotPositiveDefiniteError
@@ -91,6 +89,9 @@ def _connected_rows(known: KnownCovariance) -> Iterator[Ints]:
     linked = known.covariances != 0.0
     if not linked.any():
         return
+    from scipy.sparse import coo_matrix  # 0.15 s that sheets without covariances never need
+    from scipy.sparse.csgraph import connected_components
+
     total = len(known.variances)
     links = coo_matrix(
         (np.ones(int(linked.sum())), (known.rows_i[linked], known.rows_j[linked])),
