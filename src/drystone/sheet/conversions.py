@@ -12,6 +12,7 @@ import numpy as np
 import numpy.typing as npt
 
 from drystone.maths import spread_recovery as recover
+from drystone.sheet.rounding import half_unit
 from drystone.words import spreads
 
 Floats = npt.NDArray[np.float64]
@@ -72,13 +73,22 @@ def _limits_given(arm: ArmNumbers) -> Mask:
 def _limits_refused(arm: ArmNumbers) -> Refusals:
     yield "the level of the interval is unusable", ~_usable_level(arm)
     yield "the lower limit is not below the upper limit", ~(arm.lower < arm.upper)
-    with np.errstate(all="ignore"):
-        skew = recover.limit_asymmetry(arm.mean, arm.lower, arm.upper)
     yield (
-        "the limits lie unevenly about the mean (by more than 5 % of their width), as after a "
-        "transformation",
-        ~(skew <= MOST_ASYMMETRY) & ~np.isnan(arm.mean),
+        "the limits lie unevenly about the mean (by more than 5 % of their width, rounding "
+        "apart), as after a transformation",
+        _uneven(arm),
     )
+
+
+def _uneven(arm: ArmNumbers) -> Mask:
+    """Whether limits are not centred; rounded ones may be off by up to as much again."""
+    skew = recover.limit_asymmetry(arm.mean, arm.lower, arm.upper)
+    uneven = np.asarray(skew > MOST_ASYMMETRY)
+    for row in np.flatnonzero(uneven & (skew <= 2 * MOST_ASYMMETRY)):
+        numbers = (arm.mean[row], arm.lower[row], arm.upper[row])
+        room = 4 * min(half_unit(number) for number in numbers)  # twice the mean, each limit once
+        uneven[row] = skew[row] > MOST_ASYMMETRY + room / (numbers[2] - numbers[1])
+    return uneven
 
 
 def _half_width_refused(arm: ArmNumbers) -> Refusals:

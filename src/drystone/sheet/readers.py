@@ -11,6 +11,7 @@ from drystone.sheet.read_csv import read_csv
 from drystone.sheet.read_workbook import read_workbook
 
 WORKBOOKS = (".xlsx", ".xlsm", ".ods")
+REFUSED = (".xls", ".xlsb")  # the guard says what to do about them
 
 
 def read_sheet(path: Path, columns: Mapping[str, str] | None = None) -> RawSheet:
@@ -30,7 +31,7 @@ def read_sheet(path: Path, columns: Mapping[str, str] | None = None) -> RawSheet
     if path.is_dir():
         return _read_folder(path)
     kind = path.suffix.lower()
-    if kind in WORKBOOKS:
+    if kind in (*WORKBOOKS, *REFUSED):
         return read_workbook(path, dict(columns or {}))
     if kind == ".csv":
         table, remarks = read_csv(path)

@@ -107,6 +107,7 @@ class ContentScan:
             address = f"{letters(min(far_column, 10**6) - 1)}{far_row}"
             raise SheetProblem(limits.too_wide(), self._meter.file, self._sheet, address)
         self._rows, self._columns = max(self._rows, row), max(self._columns, column)
+        self._meter.check_area(self._rows, self._columns, self._sheet)
 
     def _keep(self, broken: Broken) -> None:
         found = self.broken.setdefault(self._sheet, {})

@@ -14,10 +14,10 @@ from drystone.sheet.problems import SheetProblem
 from drystone.sheet.zip_directory import damaged
 
 CHUNK = 65_536
-MOST_INFLATED = 200_000_000  # bytes, all parts together, as counted and not as claimed
+MOST_INFLATED = 150_000_000  # bytes, all parts together, as counted and not as claimed
 MOST_SQUEEZED = 200  # times; a part that unpacks to more than this is no sheet
 SMALL = 5_000_000  # bytes; below this a part may be squeezed as much as it likes
-MOST_ELEMENTS = 12_000_000  # in all sheets together
+MOST_ELEMENTS = 5_000_000  # in all sheets together; a number takes two
 DEEPEST = 100  # elements within elements
 LONGEST_MARK = 1_000_000  # bytes of one tag
 
@@ -70,8 +70,12 @@ class Meter:
 
     def count_area(self, rows: int, columns: int, sheet: str) -> None:
         """Add the used rectangle of a sheet, counted from A1."""
+        self.check_area(rows, columns, sheet)
         self.cells += rows * columns
-        if self.cells > limits.MOST_CELLS:
+
+    def check_area(self, rows: int, columns: int, sheet: str) -> None:
+        """Refuse a rectangle that does not fit beside those counted before."""
+        if self.cells + rows * columns > limits.MOST_CELLS:
             raise SheetProblem(limits.too_many_cells(), self.file, sheet)
 
     def count_text(self, size: int, sheet: str) -> None:

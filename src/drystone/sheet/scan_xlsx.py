@@ -32,7 +32,7 @@ class SheetScan:
         self.shared_cells = 0
         self._rows = self._columns = 0
         self._row_text, self._cut, self._fresh = "0", -1, True
-        self._reference = ""
+        self._reference, self._beyond = "", 0  # the last address, and cells after it without one
         self._known: set[str] = set()  # letters of columns that hold a value
         self._kinds: dict[str, int] = {}
         self._type: str | None = None
@@ -60,7 +60,11 @@ class SheetScan:
             if self._formula or self._text is not None:
                 self._judge()
             self._type = attributes.get("t")
-            self._reference = attributes.get("r") or self._next_reference()
+            reference = attributes.get("r")
+            if reference is None:
+                self._beyond += 1
+            else:
+                self._reference, self._beyond = reference, 0
         elif kind == _FORMULA:
             self._formula = True
         elif kind == _ROW:
@@ -72,17 +76,17 @@ class SheetScan:
     def _begin_row(self, number: str | None) -> None:
         self._row_text = number or str(int(self._row_text) + 1)
         self._cut = -len(self._row_text)
-        self._fresh, self._reference = True, ""
-
-    def _next_reference(self) -> str:
-        """Address of a cell that carries none: the place after the cell before it in the row."""
-        column = self._place()[1] + 1 if self._reference else 0
-        return f"{letters(column)}{self._row_text}"
+        self._fresh, self._reference, self._beyond = True, "", 0
 
     def _value(self) -> None:
         """Take note of a value; only the first of a row or column needs a closer look."""
         reference, cut = self._reference, self._cut
-        if self._fresh or reference[:cut] not in self._known or reference[cut:] != self._row_text:
+        if (
+            self._fresh
+            or self._beyond
+            or reference[:cut] not in self._known
+            or reference[cut:] != self._row_text
+        ):
             self._widen()
         kind = self._type
         if kind == "s":
@@ -96,22 +100,28 @@ class SheetScan:
         if not self.matters:
             return
         row, column = self._place()
-        self._known.add(self._reference[: self._cut])
+        if not self._beyond:
+            self._known.add(self._reference[: self._cut])
         self._fresh = False
         self._rows, self._columns = max(self._rows, row + 1), max(self._columns, column + 1)
         if row >= limits.MOST_ROWS or column >= limits.MOST_COLUMNS:
-            far = self._reference[:20]
+            far = f"{letters(column)}{row + 1}"[:20]
             raise SheetProblem(limits.too_wide(), self._meter.file, self.name, far)
+        self._meter.check_area(self._rows, self._columns, self.name)
 
     def _place(self) -> tuple[int, int]:
-        """Row and column, from 0, of the present cell."""
+        """Row and column, from 0, of the present cell; one without address follows the last."""
+        if not self._reference:
+            if int(self._row_text) < 1:
+                raise ValueError("a cell outside any row")
+            return int(self._row_text) - 1, self._beyond - 1
         name = self._reference.rstrip(_DIGITS)
         row, column = int(self._reference[len(name) :]), 0
         if row < 1 or not (name.isascii() and name.isalpha()):
             raise ValueError("no address")
         for letter in name[:8].upper():
             column = column * 26 + ord(letter) - 64
-        return row - 1, column - 1
+        return row - 1, column - 1 + self._beyond
 
     def _catch(self) -> None:
         self._text = []

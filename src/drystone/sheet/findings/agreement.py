@@ -9,6 +9,7 @@ import numpy as np
 from drystone.sheet.conversions import Conversion
 from drystone.sheet.draft import Draft, Floats, Mask, where
 from drystone.sheet.notes import Note
+from drystone.sheet.rounding import half_unit
 from drystone.words import levels
 
 SAME = 0.02  # relative difference that is not worth a question
@@ -33,19 +34,6 @@ def disagreeing(
             f"{second:.6g} ({conversion.rule}); the typed SD is used until somebody decides",
             "look both up; blank the wrong one",
         )
-
-
-def half_unit(value: float) -> float:
-    """Half a unit of the last digit of ``value`` as it would be printed.
-
-    Examples
-    --------
-    >>> half_unit(0.25)
-    0.005
-    """
-    mantissa, _, exponent = repr(value).partition("e")
-    decimals = len(mantissa.partition(".")[2].rstrip("0")) - int(exponent or 0)
-    return 0.5 * 10.0 ** -max(min(decimals, 300), -300)
 
 
 def _rounding(draft: Draft, arm: str, conversion: Conversion, row: int, sd: float) -> float:
