@@ -22,6 +22,7 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     from drystone.sheet.present import collapse, findings_csv
 
     plan = make_plan(folder.resolve())
+    _ = plan.keys  # refuses formulas and filters that name a column which the sheet lacks
     findings = plan.state.table("findings")
     for line in collapse(findings):
         say(str(line))

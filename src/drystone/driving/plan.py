@@ -96,14 +96,21 @@ class Plan:
                 write_json(path, key)
             os.utime(path, (LONG_AGO, LONG_AGO))
             return
-        if self.pending[step.name].before is None:
-            # The engine may have a record of this very key from before the step was interrupted;
-            # another content makes it run again.
-            key = {**key, "again": 1}
-        if present != key:
+        if self._unfinished(step):
+            # The engine may hold these outputs for good: newer than the key, or with a record of
+            # this very key. Another content and time stamp make it run the step again.
+            tries = present.get("again", 0) if isinstance(present, dict) else 0
+            write_json(path, {**key, "again": tries + 1})
+        elif present != key:
             write_json(path, key)
         elif path.stat().st_mtime <= LONG_AGO:
             os.utime(path)
+
+    def _unfinished(self, step: Step) -> bool:
+        """Whether there are outputs of which nobody knows what they were made from."""
+        root = self.review.root
+        started = self.pending[step.name].before is None
+        return started and any((root / path).exists() for path in step.outputs)
 
     def remember(self) -> None:
         """Store what makes the next plan fast."""
