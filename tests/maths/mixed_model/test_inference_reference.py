@@ -114,3 +114,27 @@ def test_zero_boundary_test(overall):
         numbers([expected["lrt_study_zero"], expected["p_study_zero_mixture"]]),
         rtol=REFERENCE_DIGITS,
     )
+
+
+@pytest.mark.parametrize(
+    ("levels", "target"),
+    [
+        (["study", "row"], "a new effect in a new study"),
+        (["study"], "the mean effect of a new study"),
+        (["row"], "a new effect"),
+    ],
+)
+def test_prediction_names_its_target_and_counts_its_levels(overall, levels, target):
+    fitted = overall[1]
+    found = prediction_interval(fitted, levels=levels)
+    spread = sum(fitted.components[name] for name in levels) + fitted.covariance[0, 0]
+    assert found.target == target
+    assert found.standard_deviations[0] == pytest.approx(np.sqrt(spread), rel=1e-12)
+
+
+def test_own_starts_end_where_a_close_start_ends(overall):
+    prepared, fitted = overall
+    near = {name: 1.1 * value for name, value in fitted.components.items()}
+    again = fit(prepared, starts=[near])
+    assert again.certificate.starts == 1
+    np.testing.assert_allclose(again.theta, fitted.theta, rtol=1e-12)

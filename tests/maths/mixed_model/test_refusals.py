@@ -1,5 +1,6 @@
 """Every model that cannot be fitted is refused with a reason, a sentence and the facts."""
 
+import pickle
 from dataclasses import replace
 
 import numpy as np
@@ -257,6 +258,8 @@ def test_questions_the_model_cannot_answer():
         lambda: model_based(fitted, confidence_percent=100.0),
         lambda: fit(prepared, held={"study": 0.1}),
         lambda: fit(prepared, held={"row": -0.1}),
+        lambda: fit(prepared, starts=[{"study": 0.1}]),
+        lambda: fit(prepared, starts=[{"row": np.nan}]),
     ):
         assert _refused(act).reason == "invalid_problem"
 
@@ -269,3 +272,14 @@ def test_rows_that_all_lie_on_their_fitted_values():
     assert _refused(lambda: cluster_robust(prepared, fitted)).reason == "no_residuals"
     scaled = _problem(y=np.full(8, 0.3), terms=("scale",))
     assert _refused(lambda: fit(prepare(scaled))).reason == "singular_covariance"
+
+
+def test_every_reason_is_its_own():
+    kinds = Refusal.__subclasses__()
+    assert len({kind.reason for kind in kinds} | {Refusal.reason}) == len(kinds) + 1
+
+
+def test_a_refusal_survives_the_way_between_processes():
+    refusal = _refused(lambda: prepare(_problem(study=np.zeros(8, int))))
+    sent = pickle.loads(pickle.dumps(refusal))
+    assert (sent.reason, str(sent), sent.facts) == (refusal.reason, str(refusal), refusal.facts)

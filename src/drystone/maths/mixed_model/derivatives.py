@@ -73,11 +73,14 @@ def expected_information(prepared: Prepared, at: Evaluation, estimator: Estimato
     return 0.5 * traces
 
 
-def _spread(prepared: Prepared, diagonal: Floats, study: Floats) -> Floats:
+def _spread(prepared: Prepared, diagonal: Floats, study: Floats | float) -> Floats:
     """Put per-level values, diagonal levels and the study level, into the order of the terms."""
     if prepared.study_term is None:
         return diagonal
-    return np.insert(diagonal, prepared.study_term, study, axis=0)
+    made = np.empty((len(diagonal) + 1, *diagonal.shape[1:]))
+    made[list(prepared.diagonal_terms)] = diagonal
+    made[prepared.study_term] = study
+    return made
 
 
 def _quadratics(prepared: Prepared, pulled: Floats, by_study: Floats) -> Floats:
@@ -119,10 +122,8 @@ def _double_traces(prepared: Prepared, weights: Weights) -> Floats:
         return double
     cross = pulled @ h**2
     study = weights.between_root**2
-    k = prepared.study_term
-    full = np.insert(np.insert(double, k, cross, axis=0), k, 0.0, axis=1)
-    full[:, k] = np.insert(cross, k, study @ study)
-    return full
+    rows = _spread(prepared, np.column_stack([double, cross]), np.append(cross, study @ study))
+    return _spread(prepared, rows.T[:-1], rows.T[-1])
 
 
 def _double_trace_corrections(prepared: Prepared, at: Evaluation) -> Floats:

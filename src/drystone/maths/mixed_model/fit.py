@@ -87,6 +87,8 @@ class Fit:
         Rows K and studies J.
     held : tuple of str
         Levels whose component was given, not estimated.
+    theta : array, shape (q,)
+        The components as a vector, in the order of the terms.
     """
 
     estimator: Estimator
@@ -133,7 +135,8 @@ def fit(
     held : mapping of str to float, optional
         Components to keep at a given value.
     starts : sequence of mappings, optional
-        Where to start, instead of the engine's own starts.
+        Where to start, instead of the engine's own starts. One start from the fit of nearly the
+        same rows (a study left out, a replicate) saves most of the time.
 
     Returns
     -------
@@ -168,7 +171,12 @@ def _check_held(prepared: Prepared, held: Mapping[str, float]) -> None:
 
 
 def _vector(prepared: Prepared, components: Mapping[str, float]) -> Floats:
-    return np.array([components[name] for name in prepared.term_names], dtype=np.float64)
+    if set(components) != set(prepared.term_names):
+        raise InvalidProblemError(f"A start needs a value of each of {prepared.term_names}.")
+    made = np.array([components[name] for name in prepared.term_names], dtype=np.float64)
+    if not (np.isfinite(made).all() and (made >= 0.0).all()):
+        raise InvalidProblemError("A start cannot be negative or missing.")
+    return made
 
 
 def _report(prepared: Prepared, estimator: Estimator, paths: list[Path], held: np.ndarray) -> Fit:

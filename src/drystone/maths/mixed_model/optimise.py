@@ -26,6 +26,7 @@ NEAR = 1e-2
 POLISHED = 1e-15
 MOST_STEPS = 200
 MOST_DAMPING = 1e12
+STRETCHES = 10.0 ** np.arange(1, 13)
 
 
 @dataclass(frozen=True)
@@ -77,46 +78,83 @@ def maximise(
         None if the covariance has no inverse at the start.
     """
     fixed = np.zeros(len(start), dtype=bool) if held is None else held
-    here = _look(prepared, estimator, start, fixed)
+    search = _Search(prepared, estimator, fixed)
+    here = search.look(start)
     if here is None:
         return None
     damping = 1e-3
     for step in range(MOST_STEPS):
         if here.imbalance <= POLISHED:
             return Path(here, step)
-        curvature = _curvature(prepared, estimator, here, fixed)
-        moved, damping = _advance(prepared, estimator, here, curvature, fixed, damping)
+        moved, damping = search.advance(here, damping)
         if moved is None:
             return Path(here, step + 1)
         here = moved
     return Path(here, MOST_STEPS)
 
 
-def _look(prepared: Prepared, estimator: Estimator, theta: Floats, held: Flags) -> Point | None:
-    at = evaluate(prepared, theta, estimator)
-    if at is None or not np.isfinite(at.log_likelihood):
+@dataclass(frozen=True)
+class _Search:
+    """What stays the same while a search climbs."""
+
+    prepared: Prepared
+    estimator: Estimator
+    held: Flags
+
+    def look(self, theta: Floats) -> Point | None:
+        """Evaluate at `theta`; None where the covariance has no inverse."""
+        at = evaluate(self.prepared, theta, self.estimator)
+        if at is None or not np.isfinite(at.log_likelihood):
+            return None
+        here = slope(self.prepared, at, self.estimator)
+        counted = ~(self.held | _resting(theta, here.score))
+        return Point(at, here, float(np.abs(here.imbalance()[counted]).max(initial=0.0)))
+
+    def advance(self, here: Point, damping: float) -> tuple[Point | None, float]:
+        """One accepted step with the next damping, or None when no step improves."""
+        curvature = self.curvature(here)
+        trial = 0.0 if here.imbalance <= NEAR else damping
+        while trial <= MOST_DAMPING:
+            there = self.step(here, curvature + trial * np.diag(np.diag(curvature)))
+            if there is not None and _better(here, there):
+                return there, trial / 10.0
+            trial = max(10.0 * trial, 1e-3)
+        if here.imbalance > CONVERGED:
+            return self.stretch(here, curvature), damping
+        return None, damping
+
+    def stretch(self, here: Point, curvature: Floats) -> Point | None:
+        """Leave a place where the likelihood bends upwards and short steps gain only rounding."""
+        for factor in STRETCHES:
+            there = self.step(here, curvature / factor)
+            if there is not None and there.value - here.value > _blur(here):
+                return there
         return None
-    here = slope(prepared, at, estimator)
-    counted = ~(held | _resting(theta, here.score))
-    return Point(at, here, float(np.abs(here.imbalance()[counted]).max(initial=0.0)))
+
+    def step(self, here: Point, curvature: Floats) -> Point | None:
+        """Evaluate at the maximum of the quadratic model."""
+        theta = _bounded_step(here.at.theta, here.slope.score, curvature, self.held)
+        if theta is None or np.array_equal(theta, here.at.theta):
+            return None
+        return self.look(theta)
+
+    def curvature(self, here: Point) -> Floats:
+        """Observed information where it is near and positive definite, else the average one."""
+        average = here.slope.average
+        free = ~(self.held | _resting(here.at.theta, here.slope.score))
+        if here.imbalance <= NEAR:
+            expected = expected_information(self.prepared, here.at, self.estimator)
+            observed: Floats = 2.0 * average - expected
+            if np.all(np.linalg.eigvalsh(_scaled(observed[np.ix_(free, free)])) > 1e-6):
+                return observed
+        # tr(PGPG) >= tr(PG)^2 / (n - p): a floor for the rare case of a vanishing average
+        floor = 2e-6 * here.slope.half_traces**2 / (self.prepared.rows - self.prepared.width)
+        lifted: Floats = average + np.diag(np.maximum(floor - np.diag(average), 0.0))
+        return lifted
 
 
 def _resting(theta: Floats, score: Floats) -> Flags:
     return (theta <= 0.0) & (score <= 0.0)
-
-
-def _curvature(prepared: Prepared, estimator: Estimator, here: Point, held: Flags) -> Floats:
-    """Observed information where it is near and positive definite, else the average one."""
-    average = here.slope.average
-    free = ~(held | _resting(here.at.theta, here.slope.score))
-    if here.imbalance <= NEAR:
-        observed: Floats = 2.0 * average - expected_information(prepared, here.at, estimator)
-        if np.all(np.linalg.eigvalsh(_scaled(observed[np.ix_(free, free)])) > 1e-6):
-            return observed
-    # tr(PGPG) >= tr(PG)^2 / (n - p): a floor for the rare case of a vanishing average
-    floor = 1e-6 * 2.0 * here.slope.half_traces**2 / (prepared.rows - prepared.width)
-    lifted: Floats = average + np.diag(np.maximum(floor - np.diag(average), 0.0))
-    return lifted
 
 
 def _scaled(matrix: Floats) -> Floats:
@@ -127,36 +165,16 @@ def _scaled(matrix: Floats) -> Floats:
     return scaled
 
 
-def _advance(
-    prepared: Prepared,
-    estimator: Estimator,
-    here: Point,
-    curvature: Floats,
-    held: Flags,
-    damping: float,
-) -> tuple[Point | None, float]:
-    """One accepted step with the next damping, or None when no step improves."""
-    near = here.imbalance <= NEAR
-    trial = 0.0 if near else damping
-    while trial <= MOST_DAMPING:
-        bent = curvature + trial * np.diag(np.diag(curvature))
-        theta = _bounded_step(here.at.theta, here.slope.score, bent, held)
-        if theta is None or np.array_equal(theta, here.at.theta):
-            return None, damping
-        there = _look(prepared, estimator, theta, held)
-        if there is not None and _better(here, there):
-            return there, trial / 10.0
-        trial = max(10.0 * trial, 1e-3)
-    return None, damping
-
-
 def _better(here: Point, there: Point) -> bool:
     # differences below the rounding error of the sum decide nothing; the scores do
-    blur = 1e-12 * (1.0 + abs(here.value))
     gain = there.value - here.value
-    if gain > blur:
+    if gain > _blur(here):
         return True
-    return gain >= -blur and there.imbalance < 0.9 * here.imbalance
+    return gain >= -_blur(here) and there.imbalance < 0.9 * here.imbalance
+
+
+def _blur(here: Point) -> float:
+    return 1e-12 * (1.0 + abs(here.value))
 
 
 def _bounded_step(theta: Floats, score: Floats, curvature: Floats, held: Flags) -> Floats | None:

@@ -1,6 +1,7 @@
 """Everything about a problem that does not change with the components: sort, rotate, factor."""
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -72,17 +73,17 @@ class Prepared:
     base: Floats
     slopes: Floats
 
-    @property
+    @cached_property
     def term_names(self) -> tuple[str, ...]:
         """Names of the levels, in the order of every vector of components."""
         return self.problem.term_names
 
-    @property
+    @cached_property
     def diagonal_terms(self) -> tuple[int, ...]:
         """Positions of the levels that act on the diagonal."""
         return tuple(k for k, name in enumerate(self.term_names) if name != STUDY)
 
-    @property
+    @cached_property
     def study_term(self) -> int | None:
         """Position of the study level, if declared."""
         return self.term_names.index(STUDY) if STUDY in self.term_names else None
