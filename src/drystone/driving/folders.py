@@ -12,6 +12,7 @@ SNAKEFILE = """\
 # Plain `snakemake` works here too; `drystone run` is the same with one progress display.
 from drystone.driving.bundled import snakefile
 include: str(snakefile())
+rule review: input: rules.all.input
 """
 
 PROFILE = """\
