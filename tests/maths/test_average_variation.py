@@ -58,8 +58,9 @@ def test_square_of_mean_is_never_above_mean_of_squares(arms):
 @given(st.floats(0.01, 2), st.integers(1, 20))
 def test_equal_cvs_give_the_same_plain_versions(cv, m):
     arms = np.full(m, cv), np.arange(2.0, 2.0 + m)
+    found = variation.all_versions(*arms)
     for name in ("square of mean", "mean of squares", "square of median"):
-        assert variation.VERSIONS[name](*arms) == pytest.approx(cv**2, rel=1e-9)
+        assert found[name].cv2 == pytest.approx(cv**2, rel=1e-9)
 
 
 @given(ARMS)
@@ -69,20 +70,30 @@ def test_versions_do_not_depend_on_the_order_of_arms(arms):
     assert there.keys() == back.keys()
     for name, value in there.items():
         if name != "square of median":  # ties may fall on either side of the middle
-            assert value == pytest.approx(back[name], rel=1e-9)
+            assert value.cv2 == pytest.approx(back[name].cv2, rel=1e-9)
 
 
-@given(ARMS, st.sampled_from(["square of mean", "mean of squares"]))
-def test_largest_share_is_a_share_of_the_sum(arms, version):
-    top = variation.largest_share(*arms, version)
-    assert 1 / len(arms[0]) - 1e-12 <= top.share <= 1 + 1e-12
+@given(ARMS)
+def test_largest_share_is_a_share_of_the_sum(arms):
+    for version in variation.all_versions(*arms).values():
+        if version.top is not None:
+            assert 1 / version.arms - 1e-12 <= version.top.share <= 1 + 1e-12
 
 
 def test_one_arm_near_zero_mean_owns_the_mean_of_squares():
-    """Eleven plain arms and one with CV 9: 81 of 81 + 11 x .09."""
+    """Eleven plain arms and one with CV 9: 81 of 81 + 11 x .09, and 9 of 9 + 11 x .3."""
     cv, n = np.r_[np.full(11, 0.3), 9.0], np.full(12, 5.0)
-    top = variation.largest_share(cv, n, "mean of squares")
-    assert (top.index, top.share) == (11, pytest.approx(81 / (81 + 11 * 0.09), rel=1e-12))
+    found = variation.all_versions(cv, n)
+    squares, mean = found["mean of squares"].top, found["square of mean"].top
+    assert (squares.index, squares.share) == (11, pytest.approx(81 / (81 + 11 * 0.09), rel=1e-12))
+    assert (mean.index, mean.share) == (11, pytest.approx(9 / (9 + 11 * 0.3), rel=1e-12))
+    passing = found["mean of squares, arms that pass the normal check"]
+    assert (passing.arms, passing.cv2) == (11, pytest.approx(0.09, rel=1e-12))
+
+
+def test_average_without_a_passing_arm_has_no_such_version():
+    found = variation.all_versions(np.array([4.0, 5.0]), np.array([3.0, 3.0]))
+    assert not any("pass" in name for name in found)
 
 
 def test_normal_check_limit_is_three():

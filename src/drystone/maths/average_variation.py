@@ -47,15 +47,15 @@ def mean_of_squares(cv: Array, n: Array) -> float:
     return float(np.sum(n * cv**2) / np.sum(n))
 
 
-def winsorised_mean_of_squares(cv: Array, n: Array, quantile: float = 0.99) -> float:
-    """As `mean_of_squares`, with CVs above the ``quantile`` pulled down to it."""
-    return mean_of_squares(np.minimum(cv, np.quantile(cv, quantile)), n)
+def winsorised(cv: Array, quantile: float = 0.99) -> Array:
+    """CVs (m,) with those above the ``quantile`` pulled down to it."""
+    return np.minimum(cv, np.quantile(cv, quantile))
 
 
-def shrunken_mean_of_squares(cv: Array, n: Array) -> float:
-    """As `mean_of_squares`, each CV^2 shrunk to CV^2 / (1 + 3 CV^2 / n) against plug-in noise."""
-    cv2 = cv**2
-    return float(np.sum(n * cv2 / (1 + 3 * cv2 / n)) / np.sum(n))
+def shrunken(cv: Array, n: Array) -> Array:
+    """CVs (m,) whose squares are shrunk to CV^2 / (1 + 3 CV^2 / n), against plug-in noise."""
+    found: Array = cv / np.sqrt(1 + 3 * cv**2 / n)
+    return found
 
 
 def square_of_median(cv: Array, n: Array) -> float:
@@ -71,38 +71,68 @@ def normal_enough(cv: Array, n: Array) -> NDArray[np.bool_]:
     return np.asarray(4 * n**1.5 / (1 + 4 * n) >= GEARY_LIMIT * cv)
 
 
-def largest_share(cv: Array, n: Array, version: str) -> Share:
-    """Arm that contributes most to the average.
+def largest_share(parts: Array) -> Share:
+    """Arm that contributes most to a sum.
 
     Parameters
     ----------
-    version : 'square of mean' (shares of sum n CV) or 'mean of squares' (shares of sum n CV^2)
+    parts : (m,) contributions, not negative: n CV for a mean CV, n CV^2 for a mean squared CV
     """
-    parts = n * cv if version == "square of mean" else n * cv**2
     total = float(np.sum(parts))
     index = int(np.argmax(parts))
     return Share(index, float(parts[index]) / total if total > 0 else 0.0)
 
 
-VERSIONS = {
-    "square of mean": square_of_mean,
-    "mean of squares": mean_of_squares,
-    "mean of squares, winsorised at 99 %": winsorised_mean_of_squares,
-    "mean of squares, shrunken": shrunken_mean_of_squares,
-    "square of median": square_of_median,
-}
+@dataclass(frozen=True)
+class Version:
+    """One way to take the average squared CV.
+
+    Parameters
+    ----------
+    cv2 : the average
+    top : the arm that owns most of it; None for the median, which no arm owns
+    arms : number of arms that went in
+    """
+
+    cv2: float
+    top: Share | None
+    arms: int
 
 
-def all_versions(cv: Array, n: Array) -> dict[str, float]:
+SQUARE_OF_MEAN, MEAN_OF_SQUARES = "square of mean", "mean of squares"
+
+
+def all_versions(cv: Array, n: Array) -> dict[str, Version]:
     """Every version of the average, by name, and the plain ones without doubtful arms.
 
     Parameters
     ----------
     cv, n : (m,) CV and replicates of each reporting physical arm; m >= 1
     """
-    found = {name: function(cv, n) for name, function in VERSIONS.items()}
-    fit = normal_enough(cv, n)
-    for name in ("square of mean", "mean of squares"):
-        if fit.any():
-            found[f"{name}, arms that pass the normal check"] = VERSIONS[name](cv[fit], n[fit])
+    fit = np.flatnonzero(normal_enough(cv, n))
+    found = {
+        SQUARE_OF_MEAN: _of_mean(cv, n),
+        MEAN_OF_SQUARES: _of_squares(cv, n),
+        f"{MEAN_OF_SQUARES}, winsorised at 99 %": _of_squares(winsorised(cv), n),
+        f"{MEAN_OF_SQUARES}, shrunken": _of_squares(shrunken(cv, n), n),
+        "square of median": Version(square_of_median(cv, n), None, len(cv)),
+    }
+    if len(fit):
+        passing = "arms that pass the normal check"
+        found[f"{SQUARE_OF_MEAN}, {passing}"] = _of_mean(cv, n, fit)
+        found[f"{MEAN_OF_SQUARES}, {passing}"] = _of_squares(cv, n, fit)
     return found
+
+
+def _of_mean(cv: Array, n: Array, kept: NDArray[np.intp] | None = None) -> Version:
+    chosen = np.arange(len(cv)) if kept is None else kept
+    top = largest_share(n[chosen] * cv[chosen])
+    average = square_of_mean(cv[chosen], n[chosen])
+    return Version(average, Share(int(chosen[top.index]), top.share), len(chosen))
+
+
+def _of_squares(cv: Array, n: Array, kept: NDArray[np.intp] | None = None) -> Version:
+    chosen = np.arange(len(cv)) if kept is None else kept
+    top = largest_share(n[chosen] * cv[chosen] ** 2)
+    average = mean_of_squares(cv[chosen], n[chosen])
+    return Version(average, Share(int(chosen[top.index]), top.share), len(chosen))

@@ -122,13 +122,19 @@ def _pooled_majority(arms: pd.DataFrame) -> bool:
 
 def _versions(chosen: _Chosen, used: str) -> pd.DataFrame:
     cv, n = chosen.arms["cv"].to_numpy(float), chosen.arms["n"].to_numpy(float)
-    found = variation.all_versions(cv, n)
-    top = variation.largest_share(cv, n, used)
-    table = pd.DataFrame({"version": list(found), "cv2": list(found.values())})
-    table["outcome"], table["arm"] = chosen.outcome, chosen.arm
-    table["reporting_arms"] = len(cv)
-    table["used"] = table["version"] == used
-    table["pooled_because"] = chosen.because or None
-    table["largest_share"] = top.share
-    table["largest_arm"] = chosen.arms["arm"].iloc[top.index]
-    return table
+    names = chosen.arms["arm"].to_numpy()
+    rows = [
+        {
+            "outcome": chosen.outcome,
+            "arm": chosen.arm,
+            "version": name,
+            "cv2": version.cv2,
+            "reporting_arms": version.arms,
+            "used": name == used,
+            "pooled_because": chosen.because or None,
+            "largest_share": version.top.share if version.top else np.nan,
+            "largest_arm": names[version.top.index] if version.top else None,
+        }
+        for name, version in variation.all_versions(cv, n).items()
+    ]
+    return pd.DataFrame(rows)
