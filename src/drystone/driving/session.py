@@ -65,7 +65,7 @@ def run_review(folder: Path, cores: int, strict: bool = False, tidy: bool = Fals
 
     def begin(plan: Plan) -> None:
         seen.append(plan)
-        if strict and _stop_lines(plan):
+        if strict and _has_stops(plan):
             raise StrictStop
         display.begin(plan)
 
@@ -109,18 +109,12 @@ def _say_ran(plan: Plan, outcome: Outcome) -> None:
 
 
 def _say_stops(plan: Plan) -> None:
-    lines = _stop_lines(plan)
-    if lines:
-        rows = plan.state.table("rows")
-        _say(f"{sum(lines.values())} of {len(rows)} rows cannot be used and stand in the ledger:")
-        for reason, count in lines.items():
-            _say(f"  {count} x {reason}")
-
-
-def _stop_lines(plan: Plan) -> dict[str, int]:
-    """Rules by which rows left at the check, with how many."""
-    ledger = plan.state.table("ledger")
-    return {str(rule): int(n) for rule, n in ledger["rule"].value_counts().items()}
+    rows, by_rule = plan.state.rows_left()
+    if by_rule:
+        _say(f"{sum(by_rule.values())} of {rows} rows cannot be used and stand in the ledger:")
+        for rule, count in by_rule.items():
+            _say(f"  {count} x {rule}")
+    plan.state.remember()
 
 
 def _say_leftovers(plan: Plan, tidy: bool) -> None:
@@ -131,6 +125,12 @@ def _say_leftovers(plan: Plan, tidy: bool) -> None:
             _say(f"Removed {path}, which the config no longer has.")
         else:
             _say(f"{path} belongs to nothing in the config; `drystone run --tidy` removes it.")
+
+
+def _has_stops(plan: Plan) -> bool:
+    from drystone.words.levels import STOP
+
+    return bool((plan.state.table("findings")["level"] == STOP).any())
 
 
 def _has_results(plan: Plan) -> bool:

@@ -48,7 +48,7 @@ class SheetState:
     review: Review
     folder: Path
     name: str
-    _digests: dict[str, str] = field(default_factory=dict)
+    _digests: dict[str, Any] = field(default_factory=dict)
     _tables: dict[str, pd.DataFrame] = field(default_factory=dict)
     _new: bool = False
 
@@ -75,6 +75,16 @@ class SheetState:
         """Digest of what the figures of ``analysis`` show of the sheet besides its numbers."""
         name = f"figures {digest(list(analysis.outcome))}"
         return self._digest(name, lambda: self._figures_content(analysis))
+
+    def rows_left(self) -> tuple[int, dict[str, int]]:
+        """Rows of the sheet, and how many left at the check by each rule."""
+        if "rows left" not in self._digests:
+            counts = self.table("ledger")["rule"].value_counts()
+            by_rule = {str(rule): int(number) for rule, number in counts.items()}
+            self._digests["rows left"] = [len(self.table("rows")), by_rule]
+            self._new = True
+        rows, rules = self._digests["rows left"]
+        return rows, rules
 
     def table(self, name: str) -> pd.DataFrame:
         """One stored table of the intake; the sheet is read when it has not been yet."""
@@ -107,7 +117,7 @@ class SheetState:
         if name not in self._digests:
             self._digests[name] = digest(content())
             self._new = True
-        return self._digests[name]
+        return str(self._digests[name])
 
     def _slice_content(self, analysis: Analysis) -> list[str]:
         from drystone.stages.digest_rows import digest_table

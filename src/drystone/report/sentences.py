@@ -90,8 +90,9 @@ def prediction(low: float, high: float, confidence_percent: float) -> str:
     if math.isnan(low) or math.isnan(high):
         return "No prediction interval: the fit does not give one."
     return (
-        f"Prediction interval, {numbers.level_percent(confidence_percent)}: the ratio of a "
-        f"new comparison in a new study is expected between {numbers.percent(low)} and {numbers.percent(high)}."
+        f"Prediction interval, {numbers.level_percent(confidence_percent)}: the ratio of a new "
+        f"comparison in a new study is expected between {numbers.percent(low)} and "
+        f"{numbers.percent(high)}."
     )
 
 

@@ -44,8 +44,9 @@ def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
     _write_tables(root, settings, intake, new)
     shutil.copyfile(root / "cache" / "report" / "report.html", new / "report.html")
     for name in settings.all_analyses():
-        copy = {"dirs_exist_ok": True, "ignore": shutil.ignore_patterns("list.json")}
-        shutil.copytree(figures_folder(root, name), new / "figures", **copy)
+        left_out = shutil.ignore_patterns("list.json")
+        folder = figures_folder(root, name)
+        shutil.copytree(folder, new / "figures", ignore=left_out, dirs_exist_ok=True)
     manifest = _manifest(root, settings, new, run_id)
     (new / "manifest.json").write_text(json.dumps(manifest, indent=1), encoding="utf-8")
     swap(root)

@@ -34,6 +34,7 @@ def unused_spreads(draft: Draft) -> Iterator[Note]:
     """Spreads that are typed but not converted yet, where the arm has no SD."""
     without = {arm: np.isnan(draft.sds[arm]) for arm in arms.ARMS}
     for arm in arms.ARMS:
+        yield from _lonely_limit(draft, arm, without[arm])
         kinds, spread = draft.text(f"{arm}_spread_kind"), ~np.isnan(draft.number(f"{arm}_spread"))
         other = np.array([kind not in BY_KIND and kind is not None for kind in kinds], dtype=bool)
         yield from draft.notes(
@@ -67,6 +68,19 @@ def unused_spreads(draft: Draft) -> Iterator[Note]:
         )
 
 
+def _lonely_limit(draft: Draft, arm: str, without: Mask) -> Iterator[Note]:
+    given = {end: ~np.isnan(draft.number(f"{arm}_{end}")) for end in ("lower", "upper")}
+    for end, other in (("lower", "upper"), ("upper", "lower")):
+        yield from draft.notes(
+            levels.ASK,
+            "one limit only",
+            f"{arm}_{end}",
+            where(without & given[end] & ~given[other]),
+            f"the {other} limit is missing, so the interval's width is not known; {NO_SD}",
+            "type both limits",
+        )
+
+
 def _confidence(draft: Draft) -> Iterator[Note]:
     percent = draft.number("confidence_percent")
     odd = ~np.isnan(percent) & ~((percent >= 50) & (percent < 100))
@@ -96,7 +110,7 @@ def _negative(draft: Draft, arm: str) -> Iterator[Note]:
 def _single(draft: Draft, arm: str) -> Iterator[Note]:
     n = draft.number(f"{arm}_n")
     single = (n >= 1) & (n < 2)
-    for what in ("sd", "spread"):
+    for what in ("sd", "spread", "lower"):
         column = f"{arm}_{what}"
         yield from draft.notes(
             levels.WARN,
@@ -121,7 +135,9 @@ def _find(draft: Draft, arm: str) -> Iterator[Note]:
             yield from _refused(draft, arm, conversion, where(rows & mask & np.isnan(typed)), wrong)
             rows &= ~mask
         converted = np.where(rows, conversion.convert(numbers), np.nan)
-        rows &= np.isfinite(converted) & (converted >= 0)
+        huge = where(np.isinf(converted))
+        yield from _refused(draft, arm, conversion, huge, "its SD would be too large a number")
+        rows &= np.isfinite(converted)
         both = rows & ~np.isnan(typed)
         yield from disagreeing(draft, arm, conversion, both, typed, converted)
         take = rows & np.isnan(typed)
@@ -154,8 +170,8 @@ def _refused(
     draft: Draft, arm: str, conversion: Conversion, rows: list[int], wrong: str
 ) -> Iterator[Note]:
     column = f"{arm}_{conversion.inputs[0]}"
-    todo = "check the limits, the mean and the level; type the SD when it can be had"
-    rule = "interval not used"
+    todo = "check what goes in; type the SD when it can be had"
+    rule = f"{draft.text(f'{arm}_spread_kind')[rows[0]]} not used" if rows else ""
     yield from draft.notes(levels.ASK, rule, column, rows, f"{wrong}; {NO_SD}", todo)
 
 
