@@ -221,12 +221,15 @@ def test_ods_errors_are_found_where_they_stand():
         '<table:table-cell table:formula="of:=1+1" office:value-type="float" office:value="2">'
         "<text:p>2</text:p></table:table-cell>"
         '<table:table-cell table:formula="of:=A1" office:value-type="string"><text:p>Err:502'
-        "</text:p></table:table-cell></table:table-row>"
+        "</text:p></table:table-cell>"
+        '<table:table-cell calcext:value-type="error"><text:p>#N/A</text:p></table:table-cell>'
+        "</table:table-row>"
     )
     assert ods_broken(skip + row) == {
         (4, 2): Broken("#DIV/0!"),
         (4, 3): Broken("", unsaved=True),
         (4, 5): Broken("Err:502"),
+        (4, 6): Broken("#N/A"),
     }
 
 

@@ -57,10 +57,9 @@ def test_trial_sheets_balance_and_keep_every_number(folder):
 
 
 def test_sheets_with_blanked_sds_balance():
-    for path in sorted((DATA / RAPE / "missing").glob("*_[0-9]*.csv"))[:6]:
+    for path in sorted((DATA / RAPE / "missing").glob("*_30.csv")):
         typed = pd.read_csv(path)
-        if "control_mean" not in typed:
-            continue
+        assert typed["control_sd"].isna().any()
         intake = of(path.relative_to(DATA), outcomes={OUTCOMES[RAPE]: None})
         assert balances(intake)
         # without an SD of its own: blank, or the zero of the arm with no yield at all

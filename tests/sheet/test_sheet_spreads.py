@@ -84,9 +84,21 @@ def test_limits_go_before_a_half_width():
 def test_doubtful_limits_are_asked_about_and_not_used(change, word):
     intake, value, _ = control({**change, "control_spread_kind": "CI"})
     assert np.isnan(value)
-    assert found(intake, "interval not used") == [("ask", "K2", "r1")]
-    assert word in intake.findings.set_index("rule")["wrong"]["interval not used"]
+    assert found(intake, "CI not used") == [("ask", "K2", "r1")]
+    assert word in intake.findings.set_index("rule")["wrong"]["CI not used"]
     assert intake.ledger.empty
+
+
+def test_one_limit_is_no_interval():
+    intake, value, _ = control({"control_upper": 4.5})
+    assert np.isnan(value)
+    assert found(intake, "one limit only") == [("ask", "K2", "r1")]
+
+
+def test_sd_too_large_for_a_number_is_asked_about():
+    intake, value, _ = control({"control_spread": 1.7e308, "control_spread_kind": "SE"})
+    assert np.isnan(value)
+    assert found(intake, "SE not used") == [("ask", "K2", "r1")]
 
 
 def test_limits_that_are_uneven_by_rounding_alone_are_used():

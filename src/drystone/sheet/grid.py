@@ -35,11 +35,13 @@ def table_from_grid(
         raise SheetProblem("is empty; the first row must hold the column names", file, name)
     named = [(j, text) for j, text in enumerate(map(header_text, rows[top])) if text]
     body = list(_body(rows, top, [j for j, _ in named]))
+    width = named[-1][0] + 1 if named else 0
+    full = [_padded(rows[i], width) for i in body]
     table = RawTable(
         name=name,
         headers=tuple(text for _, text in named),
         positions=tuple(j for j, _ in named),
-        columns=tuple([_at(rows[i], j) for i in body] for j, _ in named),
+        columns=tuple([row[j] for row in full] for j, _ in named),
         row_numbers=tuple(i + 1 for i in body),
         header_row=top + 1,
     )
@@ -59,8 +61,8 @@ def _holds(cell: Cell) -> bool:
     return not isinstance(cell, str) or not cell.isspace()
 
 
-def _at(row: Sequence[Cell], column: int) -> Cell:
-    return row[column] if column < len(row) else ""
+def _padded(row: Sequence[Cell], width: int) -> Sequence[Cell]:
+    return row if len(row) >= width else [*row, *[""] * (width - len(row))]
 
 
 def _put(rows: list[list[Cell]], row: int, column: int, cell: Cell) -> None:

@@ -50,7 +50,7 @@ class ContentScan:
         elif name == "table:table-row":
             self._judge()
             self._row += self._row_repeat
-            self._row_repeat = _count(attributes, "table:number-rows-repeated")
+            self._row_repeat = _count(attributes.get("table:number-rows-repeated", "1"))
             self._column, self._repeat = 0, 0
         elif name == "office:annotation":
             self._in_comment = True
@@ -62,10 +62,15 @@ class ContentScan:
 
     def _begin(self, attributes: dict[str, str]) -> None:
         self._column += self._repeat
-        self._repeat = _count(attributes, "table:number-columns-repeated")
+        repeat = attributes.get("table:number-columns-repeated")
+        self._repeat = 1 if repeat is None else _count(repeat)
         self._attributes = attributes
         self._in_cell, self._has_text, self._in_comment = True, False, False
-        if "table:formula" in attributes or self._repeat * self._row_repeat > 1:
+        if (
+            "table:formula" in attributes
+            or self._repeat * self._row_repeat > 1
+            or attributes.get("calcext:value-type") == "error"
+        ):
             self._text = []
             self._parser.CharacterDataHandler = self._text.append
 
@@ -73,18 +78,21 @@ class ContentScan:
         if not self._in_cell:
             return
         self._in_cell = False
-        text = "".join(self._text or ()).strip()
+        text = None
         if self._text is not None:
-            self._text = None
-            self._parser.CharacterDataHandler = None
-        broken = self._broken(text)
-        typed = any(key.endswith(":value-type") for key in self._attributes)
+            text = "".join(self._text).strip()
+            self._text = self._parser.CharacterDataHandler = None
+        attributes = self._attributes
+        broken = None if text is None else self._broken(text)
+        typed = "office:value-type" in attributes or "calcext:value-type" in attributes
         if not (typed or self._has_text or broken):
             return
-        self._widen()
+        row, column = self._row + self._row_repeat, self._column + self._repeat
+        if row > self._rows or column > self._columns:
+            self._widen(row, column)
         repeats = self._repeat * self._row_repeat
         if repeats > 1:
-            size = len(text) + sum(map(len, self._attributes.values()))
+            size = len(text or "") + sum(map(len, attributes.values()))
             self._meter.count_text(size * repeats, self._sheet)
         if broken is not None:
             self._keep(broken)
@@ -99,8 +107,8 @@ class ContentScan:
             return Broken(text)
         return Broken("", unsaved=True) if kind is None and not text else None
 
-    def _widen(self) -> None:
-        row, column = self._row + self._row_repeat, self._column + self._repeat
+    def _widen(self, row: int, column: int) -> None:
+        """Take note of a value whose cells end before this row and column, both from 0."""
         if row > limits.MOST_ROWS or column > limits.MOST_COLUMNS:
             far_row = row if row > limits.MOST_ROWS else self._row + 1
             far_column = column if column > limits.MOST_COLUMNS else self._column + 1
@@ -117,6 +125,5 @@ class ContentScan:
                 found[row, column] = broken
 
 
-def _count(attributes: dict[str, str], key: str) -> int:
-    text = attributes.get(key, "1")
+def _count(text: str) -> int:
     return max(int(text), 1) if text.isascii() and text.isdigit() and len(text) < 12 else 1
