@@ -62,13 +62,15 @@ def test_used_area_is_limited():
     assert "more than 2000000 cells" in refusal(xlsx_parts(sheet_xml(cells)))
 
 
-def test_bomb_is_refused_by_what_it_unpacks_to():
+@pytest.mark.parametrize("path", ["xl/worksheets/sheet1.xml", "xl/media/a.png"])
+def test_bomb_is_refused_by_what_it_unpacks_to(path):
     stream = io.BytesIO()
     with zipfile.ZipFile(stream, "w", zipfile.ZIP_DEFLATED) as archive:
         for name, content in xlsx_parts("").items():
-            if "sheet1" not in name:
-                archive.writestr(name, content)
-        with archive.open("xl/worksheets/sheet1.xml", "w") as part:
+            if name != path:
+                archive.writestr(name, content or sheet_xml(""))
+        with archive.open(path, "w") as part:
+            part.write(sheet_xml("").partition("</")[0].encode())
             for _ in range(400):
                 part.write(b" " * 1_000_000)
     before, start = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss, time.process_time()
@@ -132,9 +134,46 @@ def test_too_many_elements_are_refused(monkeypatch):
     assert inspect(pack(xlsx_parts(sheet_xml("<row/>" * 900))), "a.xlsx").broken == {}
 
 
+@pytest.mark.parametrize(
+    "sheet",
+    [
+        "x" + sheet_xml(FAR),
+        "<a></b>" + sheet_xml(FAR),
+        sheet_xml(FAR).replace("<s", "<a></b><s", 1),
+    ],
+    ids=["text before", "two roots", "closed wrongly"],
+)
+@pytest.mark.parametrize("path", ["xl/worksheets/sheet1.xml", "xl/media/a.svg"])
+def test_cells_cannot_hide_in_a_part_that_is_no_sound_xml(sheet, path):
+    assert "damaged" in refusal({**xlsx_parts(sheet_xml("")), path: sheet})
+
+
+def test_broken_shared_texts_are_refused():
+    assert "damaged" in refusal(xlsx_parts(sheet_xml(""), sharedStrings="<sst><a></b></sst>"))
+    assert "damaged" in refusal(xlsx_parts(sheet_xml(""), sharedStrings="x<sst/>"))
+
+
+def test_ods_cells_count_under_any_root():
+    row = f'<table:table-row table:number-rows-repeated="300000">{ODS_TEXT}</table:table-row>'
+    parts = ods_parts(row)
+    parts["content.xml"] = parts["content.xml"].replace("office:document-content", "office:other")
+    assert "cell A300000" in refusal(parts)
+    parts["content.xml"] = "x" + parts["content.xml"]
+    assert "damaged" in refusal(parts)
+
+
+def test_thousands_of_sheets_are_refused():
+    parts = xlsx_parts(sheet_xml(""))
+    one = '<sheet name="comparisons" sheetId="1" r:id="rId1"/>'
+    parts["xl/workbook.xml"] = parts["xl/workbook.xml"].replace(one, one * 2_001)
+    assert "damaged" in refusal(parts)
+
+
 def test_pictures_may_look_as_they_like():
     parts = xlsx_parts(sheet_xml(""))
     parts["xl/media/a.svg"] = "<!DOCTYPE svg><svg><broken"
+    parts["xl/media/b.svg"] = f"<svg><image href='{'A' * 2_000_000}'/>{'<g>' * 200}</svg>"
+    parts["xl/media/c.png"] = bytes(range(256)) * 100
     parts["xl/charts/c.xml"] = "<c:chart xmlns:c='c'><c:f>A1</c:f><c:v>1</c:v></c:chart>"
     assert inspect(pack(parts), "a.xlsx").broken == {}
 

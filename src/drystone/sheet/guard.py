@@ -19,6 +19,7 @@ from drystone.sheet.scan_stream import Listener, Meter, stream
 from drystone.sheet.scan_xlsx import NameScan, SheetScan, TextScan
 from drystone.sheet.zip_directory import open_zip
 
+_TEXTS = "xl/sharedstrings.xml"
 _WORKBOOK, _RELATIONS = "xl/workbook.xml", "xl/_rels/workbook.xml.rels"
 
 
@@ -73,12 +74,13 @@ def _inspect_xlsx(
             raise SheetProblem("is two kinds of workbook in one; save it as .xlsx", meter.file)
 
         def listener(root: str, path: str = path) -> Listener | None:
-            if root == "sst" or path.casefold() == "xl/sharedstrings.xml":
+            if root == "sst" or path.casefold() == _TEXTS:
                 return texts
             sheets[path] = SheetScan(names.get(path, path), meter)
             return sheets[path]
 
-        stream(archive, part, meter, listener)
+        required = path.casefold() == _TEXTS or path in names
+        stream(archive, part, meter, listener, required=required)
     longest = max(texts.lengths, default=0)
     if longest * sum(scan.shared_cells for scan in sheets.values()) > limits.MOST_TEXT:
         _count_texts(archive, meter, sheets, texts)
@@ -102,26 +104,22 @@ def _inspect_ods(
     for part in archive.infolist():
         if part.filename == "META-INF/manifest.xml":
             _refuse_encrypted(archive, part, meter)
-
-    def listener(root: str) -> Listener | None:
-        return content if root == "document-content" else None
-
     for part in archive.infolist():
-        stream(archive, part, meter, listener if part.filename == "content.xml" else _ignored)
+        if part.filename == "content.xml":
+            stream(archive, part, meter, lambda _: content, required=True)
+        else:
+            stream(archive, part, meter, lambda _: None)
     return content.broken
 
 
-def _ignored(_: str) -> Listener | None:
-    return None
-
-
 def _refuse_encrypted(archive: zipfile.ZipFile, part: zipfile.ZipInfo, meter: Meter) -> None:
-    with archive.open(part) as packed:
-        if b"encryption-data" in packed.read(2_000_000):
-            raise SheetProblem(
-                "is encrypted; open it in a spreadsheet program and save it without a password",
-                meter.file,
-            )
+    found = NameScan("encryption-data", "")
+    stream(archive, part, meter, lambda _: found, required=True)
+    if found.seen:
+        raise SheetProblem(
+            "is encrypted; open it in a spreadsheet program and save it without a password",
+            meter.file,
+        )
 
 
 def _sheet_names(archive: zipfile.ZipFile, meter: Meter) -> dict[str, str]:
@@ -129,7 +127,8 @@ def _sheet_names(archive: zipfile.ZipFile, meter: Meter) -> dict[str, str]:
     sheets, targets = NameScan("sheet", "name"), NameScan("Relationship", "Target")
     for path, scan in ((_WORKBOOK, sheets), (_RELATIONS, targets)):
         if path in archive.namelist():
-            stream(archive, archive.getinfo(path), meter, lambda _, scan=scan: scan)  # type: ignore[misc]
+            part = archive.getinfo(path)
+            stream(archive, part, meter, lambda _, scan=scan: scan, required=True)  # type: ignore[misc]
     names: dict[str, str] = {}
     for key, name in sheets.found.items():
         target = targets.found.get(key, "")

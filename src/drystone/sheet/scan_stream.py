@@ -20,6 +20,7 @@ SMALL = 5_000_000  # bytes; below this a part may be squeezed as much as it like
 MOST_ELEMENTS = 5_000_000  # in all sheets together; a number takes two
 DEEPEST = 100  # elements within elements
 LONGEST_MARK = 1_000_000  # bytes of one tag
+CELLS_BEGIN = b"sheetData"  # other readers look for this element in parts of any shape
 
 Start = Callable[[str, dict[str, str]], None]
 
@@ -95,19 +96,23 @@ def stream(
     part: zipfile.ZipInfo,
     meter: Meter,
     listeners: Callable[[str], Listener | None],
+    *,
+    required: bool = False,
 ) -> None:
     """Unpack one part; give its elements to the listener that the root element calls for.
 
     Parameters
     ----------
     listeners : gives the listener for the local name of a root element, or None to ignore the part
+    required : whether the part must be sound; any other is left aside when it is not, unless it
+        holds cells
 
     Raises
     ------
     SheetProblem
-        When the part goes beyond a limit, or is damaged and has a listener.
+        When the part goes beyond a limit, or is damaged and matters.
     """
-    scan = _Scan(part, meter, listeners)
+    scan = _Scan(part, meter, listeners, required)
     size = 0
     try:
         with archive.open(part) as packed:
@@ -116,7 +121,7 @@ def stream(
                 meter.count_inflated(len(chunk), part, size)
                 scan.feed(chunk)
     except (zipfile.BadZipFile, zlib.error, EOFError, OSError, RuntimeError) as error:
-        raise SheetProblem(damaged(error), meter.file) from error
+        raise SheetProblem(damaged(str(error) or type(error).__name__), meter.file) from error
     scan.end()
 
 
@@ -124,12 +129,19 @@ class _Scan:
     """One pass over one part."""
 
     def __init__(
-        self, part: zipfile.ZipInfo, meter: Meter, listeners: Callable[[str], Listener | None]
+        self,
+        part: zipfile.ZipInfo,
+        meter: Meter,
+        listeners: Callable[[str], Listener | None],
+        required: bool,
     ) -> None:
         self._part, self._meter, self._listeners = part, meter, listeners
         self._listener: Listener | None = None
+        self._required = required
         self._ignored = False
         self._doctype = False
+        self._hides_cells = False
+        self._tail = b""
         self._fed = 0
         self._open = 0
         self._ends: list[str] = []  # its append is the cheapest end handler there is
@@ -138,19 +150,18 @@ class _Scan:
         self._parser.StartElementHandler = self._on_root
 
     def feed(self, chunk: bytes) -> None:
-        if self._ignored:
-            return
+        self._hides_cells = self._hides_cells or CELLS_BEGIN in self._tail + chunk
+        self._tail = chunk[-len(CELLS_BEGIN) :]
         if self._fed == 0 and chunk.lstrip()[:1] not in (b"<", b"\xef", b"\xfe", b"\xff"):
-            self._ignored = True
-            return
+            self._fail("no XML")
         self._fed += len(chunk)
-        self._parse(chunk, last=False)
+        if not self._ignored:
+            self._parse(chunk, last=False)
         self._check()
 
     def end(self) -> None:
-        if self._ignored:
-            return
-        self._parse(b"", last=True)
+        if not self._ignored:
+            self._parse(b"", last=True)
         self._check()
         if self._listener is not None and not self._ignored:
             self._listener.close()
@@ -162,8 +173,8 @@ class _Scan:
             self._fail(f"{expat.ErrorString(error.code)}, line {error.lineno}")
         except SheetProblem:
             raise
-        except ValueError:  # an address or a row number that is none
-            self._fail("an address that is none")
+        except ValueError:  # an address that is none, too many sheets
+            self._fail("addresses or sheets as no workbook has")
 
     def _on_doctype(self, *_: object) -> None:
         self._doctype = True
@@ -180,30 +191,30 @@ class _Scan:
         self._parser.EndElementHandler = self._ends.append
         heard(name, attributes)
 
+    @property
+    def _matters(self) -> bool:
+        return self._required or (self._listener is not None and self._listener.matters)
+
     def _check(self) -> None:
-        listener = self._listener
-        if self._ignored or listener is None:
+        if self._ignored:
+            if self._hides_cells:
+                self._refuse("cells in a part that is no plain sheet")
             return
-        if self._doctype and listener.matters:
-            raise SheetProblem(
-                f"holds a document type declaration ({self._part.filename}), as no workbook has; "
-                "save it again as .xlsx",
-                self._meter.file,
-            )
-        self._open += listener.starts - len(self._ends)
-        self._meter.count_elements(listener.starts)
-        listener.starts = 0
-        self._ends.clear()
+        if self._doctype and self._matters:
+            self._refuse("a document type declaration, as no workbook has")
+        if self._listener is not None:
+            self._open += self._listener.starts - len(self._ends)
+            self._meter.count_elements(self._listener.starts)
+            self._listener.starts = 0
+            self._ends.clear()
         if self._open > DEEPEST or self._fed - self._parser.CurrentByteIndex > LONGEST_MARK:
-            raise SheetProblem(
-                f"has elements too long or too deep ({self._part.filename}); copy the comparisons "
-                "into a new workbook",
-                self._meter.file,
-            )
+            self._fail("elements too long or too deep")
 
     def _fail(self, what: str) -> None:
-        if self._listener is None or not self._listener.matters:
-            self._ignored = True
-            return
-        message = f"{self._part.filename}: {what}"
-        raise SheetProblem(damaged(ValueError(message)), self._meter.file)
+        """Refuse a part that matters; leave any other aside, since nothing is read from it."""
+        if self._matters:
+            self._refuse(what)
+        self._ignored = True
+
+    def _refuse(self, what: str) -> None:
+        raise SheetProblem(damaged(f"{self._part.filename}: {what}"), self._meter.file)

@@ -10,6 +10,7 @@ from drystone.sheet.problems import SheetProblem
 from drystone.sheet.raw import Broken, letters
 from drystone.sheet.scan_stream import Meter, Start
 
+MOST_NAMES = 2_000  # sheets, or parts that a workbook points to
 _DIGITS = "0123456789"
 _FORMULA, _VALUE, _CELL, _ROW, _DATA, _OTHER = range(6)
 _KINDS = {"f": _FORMULA, "v": _VALUE, "is": _VALUE, "c": _CELL, "row": _ROW, "sheetData": _DATA}
@@ -179,11 +180,12 @@ class TextScan:
 
 
 class NameScan:
-    """Names of sheets, or targets of relationships, by relationship id."""
+    """Elements of one name, and one of their attributes by relationship id."""
 
     def __init__(self, element: str, value: str) -> None:
         self.starts, self.matters = 0, True
         self.found: dict[str, str] = {}
+        self.seen = 0
         self._element, self._value = element, value
 
     def attach(self, parser: Any) -> Start:
@@ -197,6 +199,9 @@ class NameScan:
         self.starts += 1
         if name.rpartition(":")[2] != self._element:
             return
+        self.seen += 1
+        if self.seen > MOST_NAMES:
+            raise ValueError("too many")
         ids = [text for key, text in attributes.items() if key.rpartition(":")[2].lower() == "id"]
         for key in ids:
             self.found[key] = attributes.get(self._value, "")

@@ -40,16 +40,16 @@ def open_zip(content: bytes, file: str) -> zipfile.ZipFile:
     try:
         archive = zipfile.ZipFile(io.BytesIO(content))
     except (zipfile.BadZipFile, ValueError, OSError, struct.error) as error:
-        raise SheetProblem(damaged(error), file) from error
+        raise SheetProblem(damaged(str(error) or type(error).__name__), file) from error
     _check_parts(archive, file)
     return archive
 
 
-def damaged(error: Exception) -> str:
+def damaged(what: str) -> str:
     """Sentence for a workbook that cannot be unpacked."""
     return (
-        f"is damaged ({error or type(error).__name__}); open it in a spreadsheet program and save "
-        "it again"
+        f"is damaged ({what}); open it in a spreadsheet program and save it again, or copy the "
+        "comparisons into a new workbook"
     )
 
 

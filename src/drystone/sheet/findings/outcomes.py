@@ -66,7 +66,8 @@ def check_units(draft: Draft) -> Iterator[Note]:
         units = {row: unit for row in rows if (unit := draft.text("unit")[row]) is not None}
         if not units:
             continue
-        wanted, origin = _wanted(outcome.unit, Counter(units.values()))
+        counted = Counter(unit for row, unit in units.items() if row not in draft.left_out)
+        wanted, origin = _wanted(outcome.unit, counted or Counter(units.values()))
         yield from draft.notes(
             levels.STOP,
             "another unit",

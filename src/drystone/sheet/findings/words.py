@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
+from functools import lru_cache
 
 import numpy as np
 
@@ -124,7 +125,7 @@ def _unknown(draft: Draft, name: str, row: int, typed: str, allowed: Iterable[st
     if decides:
         draft.unreadable[name] = draft.was_unreadable(name).copy()
         draft.unreadable[name][row] = True
-    hint = nearest(typed[:60], allowed)
+    hint = _hint(typed[:60], tuple(allowed))
     return draft.note(
         levels.ASK if decides else levels.WARN,
         "unknown word",
@@ -133,6 +134,11 @@ def _unknown(draft: Draft, name: str, row: int, typed: str, allowed: Iterable[st
         f"'{typed[:60]}' is no word of this column, so {effect}: {hint}",
         "type one of: " + ", ".join(allowed),
     )
+
+
+@lru_cache(maxsize=512)  # the search is slow, and a wrong word often stands in every row
+def _hint(typed: str, allowed: tuple[str, ...]) -> str:
+    return nearest(typed, allowed)
 
 
 def _designs(draft: Draft) -> Iterator[Note]:
