@@ -111,3 +111,15 @@ def test_order_of_rows_does_not_matter():
 def test_unknown_column_never_reaches_the_formula_library():
     with pytest.raises((DesignProblem, KeyError)):
         design_matrix("~ nothing", _rows())
+
+
+def test_singular_sampling_covariance_fits_with_blank_heterogeneity():
+    """Two rows that share both arms in number: the row level separates them, Q does not exist."""
+    rows = _rows(12, 4)
+    rows["sampling_variance"] = 0.02
+    pairs = pd.DataFrame({"row_id": ["r0"], "other_row_id": ["r4"], "covariance": [0.02]})
+    results = fit_rows(rows, pairs, "~ 1", ANALYSIS, Inference())
+    assert results.coefficients["refused"].isna().all()
+    assert np.isfinite(results.coefficients["estimate"].iloc[0])
+    assert np.isnan(results.heterogeneity["q"].iloc[0])
+    assert results.components["i2"].isna().all()

@@ -96,9 +96,7 @@ class Plan:
                 write_json(path, key)
             os.utime(path, (LONG_AGO, LONG_AGO))
             return
-        if self._unfinished(step):
-            # The engine may hold these outputs for good: newer than the key, or with a record of
-            # this very key. Another content and time stamp make it run the step again.
+        if self._needs_another_key(step):
             tries = present.get("again", 0) if isinstance(present, dict) else 0
             write_json(path, {**key, "again": tries + 1})
         elif present != key:
@@ -106,11 +104,16 @@ class Plan:
         elif path.stat().st_mtime <= LONG_AGO:
             os.utime(path)
 
-    def _unfinished(self, step: Step) -> bool:
-        """Whether there are outputs of which nobody knows what they were made from."""
-        root = self.review.root
-        started = self.pending[step.name].before is None
-        return started and any((root / path).exists() for path in step.outputs)
+    def _needs_another_key(self, step: Step) -> bool:
+        """Whether the engine might take the outputs for good although the step must run.
+
+        So it is when nobody knows what they were made from (the step was interrupted), or when
+        they were made from this very key and something else is lost (such as results/).
+        """
+        before = self.pending[step.name].before
+        if before is None:
+            return any((self.review.root / path).exists() for path in step.outputs)
+        return bool(before["digest"] == self.keys[step.name]["digest"])
 
     def remember(self) -> None:
         """Store what makes the next plan fast."""

@@ -61,6 +61,8 @@ def _summary(
         for other, value in pairs.get(row, []):
             if other in position:
                 spread[i, position[other]] = value
-    weights = np.linalg.solve(spread, np.ones(len(effects)))
+    # Rows that share both arms in number (or an arm of SD zero) make the matrix singular; the
+    # pseudo-inverse then gives them one row's weight together, which is what they say together.
+    weights = np.linalg.pinv(spread, hermitian=True) @ np.ones(len(effects))
     total = float(weights.sum())
     return StudySummary(study, len(rows), float(weights @ effects) / total, total**-0.5)

@@ -5,9 +5,10 @@ A model that cannot be fitted is a result too: one row with the reason, and ever
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, TypeVar
 
 import numpy as np
 import pandas as pd
@@ -41,6 +42,7 @@ if TYPE_CHECKING:
     from drystone.settings.model import Inference as InferenceSettings
 
 FEWEST_DF = 4.0
+Measure = TypeVar("Measure")
 
 
 @dataclass(frozen=True)
@@ -179,7 +181,8 @@ def _warnings(fitted: Fit, main: Inference) -> list[str]:
 
 
 def _components(prepared: Prepared, fitted: Fit) -> pd.DataFrame:
-    parts = spread.shares(prepared, fitted).by_level
+    shares = _or_none(spread.shares, prepared, fitted)
+    parts = shares.by_level if shares else {}
     table = pd.DataFrame({"level": list(fitted.components)})
     table["variance"] = list(fitted.components.values())
     table["at_zero"] = [bool(fitted.at_zero[name]) for name in fitted.components]
@@ -188,22 +191,26 @@ def _components(prepared: Prepared, fitted: Fit) -> pd.DataFrame:
 
 
 def _spread(prepared: Prepared, fitted: Fit, alone: bool) -> pd.DataFrame:
-    test = spread.homogeneity_test(prepared)
-    parts = spread.shares(prepared, fitted)
-    row: dict[str, float] = {
-        "q": test.q,
-        "q_df": float(test.degrees_of_freedom),
-        "q_p": test.p,
-        "typical_variance": parts.typical_variance,
-        "i2_total": parts.total,
-    }
-    if alone:
-        relative = spread.relative_spread(prepared, fitted)
+    row: dict[str, float] = {}
+    if test := _or_none(spread.homogeneity_test, prepared):
+        row |= {"q": test.q, "q_df": float(test.degrees_of_freedom), "q_p": test.p}
+    if parts := _or_none(spread.shares, prepared, fitted):
+        row |= {"typical_variance": parts.typical_variance, "i2_total": parts.total}
+    relative = _or_none(spread.relative_spread, prepared, fitted) if alone else None
+    if relative:
         row |= {"cvh": relative.cvh1, "m": relative.m1}
-    else:
-        share = spread.explained(prepared, fitted)
-        row |= {"r2_marginal": share.marginal, "r2_conditional": share.conditional}
+    explained = None if alone else _or_none(spread.explained, prepared, fitted)
+    if explained:
+        row |= {"r2_marginal": explained.marginal, "r2_conditional": explained.conditional}
     return pd.DataFrame([{name: row.get(name, np.nan) for name in HETEROGENEITY.columns}])
+
+
+def _or_none(measure: Callable[..., Measure], *given: Prepared | Fit) -> Measure | None:
+    """A measure that these rows do not allow (such as Q under a singular V) stays blank."""
+    try:
+        return measure(*given)
+    except Refusal:
+        return None
 
 
 def _refused(reason: str, rows: pd.DataFrame, ledger: pd.DataFrame) -> Results:
