@@ -33,7 +33,7 @@ def test_steps_name_their_upstream_before_themselves():
     settings = settings_from({"sheet": "s", "outcomes": {"a": {}, "b": {}}})
     seen = set()
     for name, step in all_steps(settings).items():
-        assert set(step.upstream) | set(step.beside) <= seen
+        assert set(step.upstream) <= seen
         seen.add(name)
     outputs = [path for step in all_steps(settings).values() for path in step.outputs]
     assert len(outputs) == len(set(outputs))

@@ -91,7 +91,10 @@ CONFIG_FAULTS = {
     "unknown key": (_settings(strategys=["all cases"]), "did you mean 'strategies'?"),
     "unknown strategy": (_settings(strategies=["impute"]), "strategies: 0: use"),
     "sheet absent": (_settings(sheet="data/none.xlsx"), "'none.xlsx' does not exist"),
-    "sheet is one csv": (_settings(sheet="data/extraction/comparisons.csv"), "single CSV file"),
+    "sheet of another kind": (
+        lambda r: (_bytes(b"x", "data/x.docx")(r), _settings(sheet="data/x.docx")(r)),
+        "'x.docx' is not a sheet that can be read",
+    ),
     "unknown outcome": (_settings(analyses={"a": {"outcome": "mass"}}), "did you mean 'biomass'?"),
     "code in formula": (
         _settings(analyses={"a": {"outcome": "biomass", "models": {"m": "~ open('x')"}}}),

@@ -11,7 +11,7 @@ from drystone.settings.model import Settings
 from drystone.settings.problems import ConfigProblem
 
 CONFIG = Path("config") / "config.yaml"
-WORKBOOKS = {".xlsx", ".ods"}
+SHEETS = {".xlsx", ".xlsm", ".ods", ".csv"}
 
 
 @dataclass(frozen=True)
@@ -32,7 +32,7 @@ class Review:
         return self.root / "results"
 
     def sheet_path(self) -> Path:
-        """Where the sheet is: a workbook, or a folder of CSV files.
+        """Where the sheet is: a workbook, a CSV file, or a folder of CSV files.
 
         Raises
         ------
@@ -40,7 +40,7 @@ class Review:
             When it does not exist or is of another kind.
         """
         path = self.root / self.settings.sheet
-        if path.is_dir() or (path.is_file() and path.suffix.lower() in WORKBOOKS):
+        if path.is_dir() or (path.is_file() and path.suffix.lower() in SHEETS):
             return path
         raise ConfigProblem(_sheet_message(path), str(CONFIG))
 
@@ -87,13 +87,11 @@ def load_settings_relative(root: Path) -> Settings:
 def _sheet_message(path: Path) -> str:
     if not path.exists():
         beside = sorted(
-            p.name for p in path.parent.glob("*") if p.suffix.lower() in WORKBOOKS or p.is_dir()
+            p.name for p in path.parent.glob("*") if p.suffix.lower() in SHEETS or p.is_dir()
         )
         hint = f"; beside it there is {', '.join(beside[:5])}" if beside else ""
         return f"sheet: '{path.name}' does not exist in {path.parent.name}{hint}"
-    if path.suffix.lower() == ".csv":
-        return (
-            f"sheet: '{path.name}' is a single CSV file; put it as comparisons.csv into a folder "
-            "and name the folder"
-        )
-    return f"sheet: '{path.name}' is not a workbook (.xlsx, .ods) or a folder of CSV files"
+    return (
+        f"sheet: '{path.name}' is not a sheet that can be read; name an .xlsx or .ods workbook, a "
+        ".csv file, or a folder with comparisons.csv"
+    )

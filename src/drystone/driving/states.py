@@ -103,7 +103,8 @@ class SheetState:
         from drystone.sheet.readers import read_sheet
         from drystone.stages.intake_store import save_intake
 
-        intake = take_in(read_sheet(self.review.sheet_path()), self.review.settings)
+        settings = self.review.settings
+        intake = take_in(read_sheet(self.review.sheet_path(), settings.columns), settings)
         self.folder.parent.mkdir(parents=True, exist_ok=True)
         save_intake(intake, self.folder)
 

@@ -22,8 +22,6 @@ class Step:
     phrase : the step in words, for messages
     outputs : files that the step writes, relative to the review folder
     upstream : names of steps whose outputs it reads
-    beside : names of steps that must have run before, but whose rerun does not rerun this one,
-        because the part of their outcome that matters here stands in the key
     settings : the options that decide its result
     modules : its stage module, and modules that it loads by name
     rows : which digest of the sheet it depends on: 'check', 'facts', 'figures', 'slice' or ''
@@ -34,7 +32,6 @@ class Step:
     phrase: str
     outputs: tuple[str, ...]
     upstream: tuple[str, ...] = ()
-    beside: tuple[str, ...] = ()
     settings: dict[str, Any] = field(default_factory=dict)
     modules: tuple[str, ...] = ()
     rows: str = ""
@@ -80,7 +77,6 @@ def _steps(settings: Settings) -> Iterator[Step]:
         "report",
         ("cache/report/report.html",),
         upstream=tuple(made),
-        beside=("check",),
         settings=settings.model_dump(),
         modules=("drystone.stages.render_report",),
         rows="facts",

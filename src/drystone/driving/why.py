@@ -119,7 +119,8 @@ def _columns_of(plan: Plan, item: Pending) -> list[str]:
     if item.step.rows == "check":
         return everything
     if item.step.rows == "facts":
-        return list(dict.fromkeys([*SHOWN_OF_ROWS, *NUMBERS_USED, *everything]))
+        shown = dict.fromkeys([*SHOWN_OF_ROWS, *NUMBERS_USED, *everything])
+        return [name for name in shown if not _internal(name)]
     if item.step.rows == "figures":
         return ["study", *LABELS]
     analysis = plan.review.settings.all_analyses()[item.step.analysis]

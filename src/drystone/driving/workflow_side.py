@@ -52,11 +52,6 @@ def upstream(plan: Plan, name: str) -> list[str]:
     return [path for above in plan.steps[name].upstream for path in plan.steps[above].outputs]
 
 
-def outputs(plan: Plan, name: str) -> list[str]:
-    """Outputs of the step ``name``."""
-    return list(plan.steps[name].outputs)
-
-
 def sheet_files(plan: Plan) -> list[str]:
     """Files of the extraction sheet."""
     return [str(path) for path in plan.review.sheet_files()]

@@ -153,7 +153,9 @@ class Inference(Part):
 class Settings(Part):
     """The whole config of a review."""
 
-    sheet: str = Field(description="the extraction sheet: .xlsx, .ods, or a folder of CSV files")
+    sheet: str = Field(
+        description="the extraction sheet: .xlsx or .ods, a .csv file, or a folder of CSV files"
+    )
     title: str = Field("", description="name of the review, as the report prints it")
     invented: bool = Field(
         False, description="true when the data are made up; the report then says so at its top"

@@ -61,7 +61,7 @@ def shown_slice(root: Path, name: str, intake: Path) -> pd.DataFrame:
 
 def whole_ledger(root: Path, settings: Settings, intake: Path) -> pd.DataFrame:
     """Every row that left, with how far its entry reaches and where it stands in the sheet."""
-    parts = [read_table(root / "cache" / "check" / "ledger.parquet")]
+    parts = [load_table(intake, "ledger")]
     for name, analysis in settings.all_analyses().items():
         parts.extend(_analysis_ledger(root, name, analysis, settings.all_strategies()))
     table = pd.concat([part for part in parts if len(part)] or parts[:1], ignore_index=True)

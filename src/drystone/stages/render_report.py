@@ -27,16 +27,15 @@ def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
 def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.ReportFacts:
     """Facts of the report, from the cached tables."""
     rows = load_table(intake, "rows")
-    checked = root / "cache" / "check"
     return shown.ReportFacts(
         review_name=settings.title or root.resolve().name,
         made_from=shown.MadeFrom(run_id, versions()),
         settings=settings,
         flow=shown.Flow(len(rows), int(rows["study"].nunique())),
-        findings=read_table(checked / "findings.parquet"),
+        findings=load_table(intake, "findings"),
         ledger=collect.whole_ledger(root, settings, intake),
-        derivations=read_table(checked / "derivations.parquet"),
-        studies=read_table(checked / "studies.parquet"),
+        derivations=load_table(intake, "derivations"),
+        studies=load_table(intake, "studies"),
         analyses=tuple(
             analysis_facts(root, settings, intake, name, analysis)
             for name, analysis in settings.all_analyses().items()
