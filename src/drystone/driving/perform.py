@@ -12,9 +12,10 @@ import traceback
 from collections.abc import Callable
 from pathlib import Path
 
-from drystone.driving.files import write_json, write_text
+from drystone.driving.files import write_json
 from drystone.driving.plan import Plan
 from drystone.driving.steps import ANALYSES, Step
+from drystone.tables.atomic import write_text
 
 Stage = Callable[[Plan, Step], None]
 LOGGER = logging.getLogger("drystone.steps")
