@@ -89,7 +89,7 @@ CONFIG_FAULTS = {
     ),
     "key twice": (_config("sheet: a\nsheet: b"), "lines 1 and 2"),
     "unknown key": (_settings(strategys=["all cases"]), "did you mean 'strategies'?"),
-    "unknown strategy": (_settings(strategies=["impute"]), "strategies: 0: use"),
+    "unknown strategy": (_settings(strategies=["impute"]), "strategies: item 1: use"),
     "sheet absent": (_settings(sheet="data/none.xlsx"), "'none.xlsx' does not exist"),
     "sheet of another kind": (
         lambda r: (_bytes(b"x", "data/x.docx")(r), _settings(sheet="data/x.docx")(r)),

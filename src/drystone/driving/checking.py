@@ -6,6 +6,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 from drystone.driving.plan import Plan, make_plan
+from drystone.driving.session import shown_path
 from drystone.words.levels import STOP
 
 FINDINGS_FILE = Path("results") / "check" / "findings.csv"
@@ -29,7 +30,7 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     say(_count(plan))
     target = plan.review.root / FINDINGS_FILE
     findings_csv(findings, target)
-    say(f"All findings with their cells: {target.relative_to(plan.review.root)}")
+    say(f"All findings with their cells: {shown_path(target)}")
     plan.state.remember()
     return bool((findings["level"] == STOP).any())
 
@@ -40,5 +41,5 @@ def _count(plan: Plan) -> str:
         return (
             f"The sheet has no rows yet; type your comparisons into {plan.review.settings.sheet}."
         )
-    usable = len(rows) - ledger["row_id"].nunique()
+    usable = len(rows) - len(ledger.drop_duplicates(["sheet", "sheet_row"]))
     return f"{len(rows)} rows: {usable} usable, {len(rows) - usable} in the ledger."

@@ -43,11 +43,13 @@ class SheetState:
     ----------
     folder : where the stored intake is, or will be
     name : digest of file content, reading options and reading code
+    inputs : SHA-256 of the sheet's files as they were read
     """
 
     review: Review
     folder: Path
     name: str
+    inputs: dict[str, str] = field(default_factory=dict)
     _digests: dict[str, Any] = field(default_factory=dict)
     _tables: dict[str, pd.DataFrame] = field(default_factory=dict)
     _new: bool = False
@@ -164,14 +166,17 @@ def sheet_state(review: Review, code: CodeIndex) -> SheetState:
         include={"columns", "defaults", "outcomes", "missing_n", "zero_sd"}
     )
     reading = {"options": options, "path": review.settings.sheet}
-    parts = [_file_digest(review.root / path) for path in review.sheet_files()]
+    inputs = {path.as_posix(): file_digest(review.root / path) for path in review.sheet_files()}
     modules = SHEET_CODE + DIGEST_CODE
-    name = digest([parts, reading, code.closure(modules), code.libraries(SHEET_CODE)])
+    name = digest(
+        [list(inputs.values()), reading, code.closure(modules), code.libraries(SHEET_CODE)]
+    )
     folder = review.cache / "sheets" / name
-    return SheetState(review, folder, name, read_json(folder / "digests.json") or {})
+    return SheetState(review, folder, name, inputs, read_json(folder / "digests.json") or {})
 
 
-def _file_digest(path: Path) -> str:
+def file_digest(path: Path) -> str:
+    """SHA-256 of a file's content."""
     total = hashlib.sha256()
     with path.open("rb") as file:
         while piece := file.read(1 << 20):
