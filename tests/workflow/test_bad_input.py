@@ -197,3 +197,12 @@ def test_unknown_command_and_folder(tmp_path, monkeypatch, capsys):
     code, said = _call(monkeypatch, capsys, "run", str(tmp_path / "nowhere"))
     assert code == 2
     assert "there is no such folder" in said
+
+
+def test_filter_that_no_row_answers_to_is_said(review, monkeypatch, capsys):
+    analyses = {"a": {"outcome": "biomass", "where": {"study": ["S1", "S9"], "year": 2004}}}
+    _settings(analyses=analyses)(review)
+    code, said = _call(monkeypatch, capsys, "check", str(review))
+    assert code == 0
+    assert "analysis 'a', where: no row has study 'S9'; known here: 'S1', " in said
+    assert "2004" not in said

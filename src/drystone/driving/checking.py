@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from pathlib import Path
 
+from drystone.driving.filters import idle_filters
 from drystone.driving.plan import Plan, make_plan
 from drystone.driving.session import shown_path
 from drystone.words.levels import STOP
@@ -27,6 +28,8 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     findings = plan.state.table("findings")
     for line in collapse(findings):
         say(str(line))
+    for note in idle_filters(plan):
+        say(note)
     say(_count(plan))
     target = plan.review.root / FINDINGS_FILE
     findings_csv(findings, target)

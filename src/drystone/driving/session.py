@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from drystone.driving import exits
+from drystone.driving.filters import idle_filters
 from drystone.driving.front import Outcome, run
 from drystone.driving.plan import Plan
 
@@ -108,7 +109,10 @@ def _last_word(plan: Plan, outcome: Outcome, tidy: bool) -> int:
         return exits.FAILED
     _say_ran(plan, outcome)
     _say_stops(plan)
+    for note in idle_filters(plan):
+        _say(note)
     _say_leftovers(plan, tidy)
+    plan.state.remember()
     print(shown_path(plan.review.results / "report.html"))  # noqa: T201 - the one line for scripts
     return exits.DONE
 
@@ -128,7 +132,6 @@ def _say_stops(plan: Plan) -> None:
         _say(f"{sum(by_rule.values())} of {rows} rows cannot be used and stand in the ledger:")
         for rule, count in by_rule.items():
             _say(f"  {count} x {rule}")
-    plan.state.remember()
 
 
 def _say_leftovers(plan: Plan, tidy: bool) -> None:

@@ -48,10 +48,10 @@ def apply_filters(rows: pd.DataFrame, analysis: Analysis) -> tuple[pd.DataFrame,
     """Split ``rows`` into those that pass the equality filters and ledger entries of the rest."""
     reasons = pd.Series("", index=rows.index, dtype=object)
     for column, allowed in analysis.where.items():
-        out = ~_as_text(rows[column]).isin(allowed) & (reasons == "")
+        out = ~as_text(rows[column]).isin(allowed) & (reasons == "")
         reasons[out] = f"{column} is not {_either(allowed)}"
     for column, refused in analysis.where_not.items():
-        out = _as_text(rows[column]).isin(refused) & (reasons == "")
+        out = as_text(rows[column]).isin(refused) & (reasons == "")
         reasons[out] = f"{column} is {_either(refused)}"
     out = reasons != ""
     left = ledger_rows(rows[out], "filtered out", reasons[out])
@@ -169,7 +169,8 @@ def _with_extra(extra: list[str]) -> pa.DataFrameSchema:
     return SLICE.add_columns({name: pa.Column(None, nullable=True) for name in extra})
 
 
-def _as_text(column: pd.Series) -> pd.Series:
+def as_text(column: pd.Series) -> pd.Series:
+    """Values as a filter of the config names them: numbers without idle zeros, blank as ''."""
     if pd.api.types.is_numeric_dtype(column.dtype):
         return column.map(lambda value: "" if pd.isna(value) else f"{value:g}")
     return column.astype(object).where(column.notna(), "")
