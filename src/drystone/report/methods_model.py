@@ -51,7 +51,7 @@ def model_words(facts: ReportFacts) -> str:
         f"follow the convention {CONVENTIONS[estimator]}, with S the fitted covariance of the rows "
         "and r the residual"
     )
-    if True:
+    if estimator == "REML":
         text += "; REML values of models with different moderators are not comparable"
     return f"{text}."
 
