@@ -129,11 +129,9 @@ def mean_from_five_numbers(
 ) -> Floats:
     """Mean from all five numbers (Luo 2018); see `five_number_weights`."""
     ends, quartiles, middle = five_number_weights(n)
-    return np.asarray(
-        ends * _midpoint(smallest, largest)
-        + quartiles * _midpoint(q1, q3)
-        + middle * floats(median)
-    )
+    with quiet():
+        outer, inner = ends * _midpoint(smallest, largest), quartiles * _midpoint(q1, q3)
+        return np.asarray(outer + inner + middle * floats(median))
 
 
 def five_number_weights(n: npt.ArrayLike) -> tuple[Floats, Floats, Floats]:
@@ -142,7 +140,7 @@ def five_number_weights(n: npt.ArrayLike) -> tuple[Floats, Floats, Floats]:
     with quiet():
         ends = 2.2 / (2.2 + n**0.75)
         quartiles = 0.7 - 0.72 / n**0.55
-    return np.asarray(ends), np.asarray(quartiles), np.asarray(1.0 - ends - quartiles)
+        return np.asarray(ends), np.asarray(quartiles), np.asarray(1.0 - ends - quartiles)
 
 
 def skewed_range(
@@ -177,7 +175,7 @@ def skewed_five_numbers(
     n = floats(n)
     with quiet():
         weight, critical = 2.65 * np.log(0.6 * n) / np.sqrt(n), 3.0 / np.sqrt(n) - 40.0 / n**3
-    ends = weight * _off_centre(smallest, median, largest)
+        ends = weight * _off_centre(smallest, median, largest)
     statistic = np.maximum(ends, _off_centre(q1, median, q3))
     return SkewTest(np.asarray(statistic), np.asarray(critical))
 
@@ -189,10 +187,12 @@ def _off_centre(low: npt.ArrayLike, middle: npt.ArrayLike, high: npt.ArrayLike) 
 
 
 def _midpoint(low: npt.ArrayLike, high: npt.ArrayLike) -> Floats:
-    return np.asarray(floats(low) / 2.0 + floats(high) / 2.0)
+    with quiet():
+        return np.asarray(floats(low) / 2.0 + floats(high) / 2.0)
 
 
 def _weighted(
     weight: Floats, low: npt.ArrayLike, high: npt.ArrayLike, median: npt.ArrayLike
 ) -> Floats:
-    return np.asarray(weight * _midpoint(low, high) + (1.0 - weight) * floats(median))
+    with quiet():
+        return np.asarray(weight * _midpoint(low, high) + (1.0 - weight) * floats(median))
