@@ -47,9 +47,11 @@ def studentised_range_quantile(
     """
     arrays = np.broadcast_arrays(floats(means), floats(df), floats(confidence_percent))
     found = np.full(arrays[0].shape, np.nan)
-    for place in np.ndindex(found.shape):
-        numbers = (float(array[place]) for array in arrays)
-        found[place] = _one_quantile(*numbers)
+    known = np.isfinite(np.sum(arrays, axis=0))
+    found[known] = [
+        _one_quantile(*map(float, numbers))
+        for numbers in zip(*(array[known] for array in arrays), strict=True)
+    ]
     return found
 
 

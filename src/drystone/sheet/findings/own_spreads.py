@@ -32,6 +32,8 @@ def find_own(draft: Draft, arm: str) -> Iterator[Note]:
     for kind, conversion in CONVERSIONS:
         rows = (kinds == kind) & conversion.given(numbers) & _plural(numbers)
         rows &= geometric if conversion.of_geometric_mean else ~geometric
+        if not rows.any():
+            continue
         for wrong, mask in conversion.refused(numbers):
             yield from _refused(draft, arm, conversion, where(rows & mask & np.isnan(typed)), wrong)
             rows &= ~mask

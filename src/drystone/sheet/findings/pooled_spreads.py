@@ -38,6 +38,8 @@ def fill_pooled(draft: Draft) -> Iterator[Note]:
     sources: list[tuple[Conversion[PairNumbers], Floats]] = []
     found = np.full(draft.size, np.nan)
     for conversion, rows in _ways(draft, numbers):
+        if not rows.any():
+            continue
         values = np.full(draft.size, np.nan)
         yield from _convert(draft, conversion, numbers, rows, values)
         yield from _unlike_sources(draft, conversion, found, values)
