@@ -230,10 +230,8 @@ def review(folder, cells):
     intake = take_in(read_sheet(folder), config)
     save_intake(intake, folder / "stored")
     analysis = config.all_analyses()["yield"]
-    make_slice(
-        folder / "stored", analysis, config.outcomes, folder / "s.parquet", folder / "l.parquet"
-    )
-    return intake, read_table(folder / "s.parquet")
+    make_slice(folder / "stored", analysis, config.outcomes, folder / "slice")
+    return intake, read_table(folder / "slice" / "slice.parquet")
 
 
 @pytest.mark.parametrize("name", list(CASES))
