@@ -35,7 +35,11 @@ ADVICE = (
     "control_spread and treatment_spread, with its kind beside it. Never convert by hand.",
     "A confidence interval: type its limits into control_lower and control_upper (and the same for "
     "the treatment), and choose the kind CI.",
-    "One spread for both arms (LSD, MSE, SED ...): pooled_spread and pooled_kind.",
+    "One spread for both arms (LSD, MSE, SED ...): pooled_spread and pooled_kind, with error_df "
+    "for an LSD or HSD. A t, F or exact p of the two arms: test_value and test_kind.",
+    "A median: type it in the column of the mean, choose the centre's kind, and type quartiles, "
+    "smallest and largest value where the paper has them. Means of logarithms likewise, with the "
+    "spread of the logarithms.",
     "A control that serves several comparisons: the same control_id and the same numbers in each "
     "of their rows.",
     "Leave a cell blank when the paper is silent. A blank is honest; a zero is a number.",

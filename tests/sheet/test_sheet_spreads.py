@@ -116,27 +116,33 @@ def test_default_kind_fills_blank_kinds_only():
     assert list(intake.rows["control_sd_rule"]) == ["from SE", "as typed"]
 
 
-@pytest.mark.parametrize("kind", ["IQR", "range", "unlabelled"])
-def test_other_kinds_are_asked_about_and_count_as_missing(kind):
-    intake, value, rule = control({"control_spread": 0.3, "control_spread_kind": kind})
+def test_unlabelled_spreads_are_asked_about_and_count_as_missing():
+    intake, value, rule = control({"control_spread": 0.3, "control_spread_kind": "unlabelled"})
     assert np.isnan(value)
     assert rule != rule
     assert found(intake, "spread not converted") == [("ask", "K2", "r1")]
+    # by hand: n 4, so an SE of 0.3 is an SD of 0.6
+    assert "as an SE the SD would be 0.6" in intake.findings["wrong"][0]
 
 
 @pytest.mark.parametrize(
-    ("change", "cell"),
+    ("change", "cell", "word"),
     [
-        ({"pooled_spread": 0.3, "pooled_kind": "LSD"}, "K2"),
-        ({"test_value": 2.3, "test_kind": "t"}, "K2"),
-        ({"control_q1": 3.5, "control_q3": 4.5}, "K2"),
-        ({"control_min": 3.0, "control_max": 5.5}, "K2"),
+        ({"pooled_spread": 0.3, "pooled_kind": "LSD"}, "K2", "without error_df"),
+        ({"pooled_spread": 0.3}, "K2", "no pooled_kind"),
+        ({"test_value": 2.3}, "K2", "no test_kind"),
+        ({"test_value": 2.3, "test_kind": "F"}, "K2", "without number_of_means"),
+        ({"control_q1": 3.5}, "K2", "without its other end"),
+        ({"control_max": 5.5}, "K2", "without its other end"),
+        ({"control_q1": 3.5, "control_q3": 4.5, "control_spread_kind": "SE"}, "K2", "another kind"),
     ],
 )
-def test_pooled_spreads_tests_and_quantiles_are_asked_about(change, cell):
+def test_spreads_that_lack_something_are_asked_about(change, cell, word):
     intake, value, _ = control(change)
     assert np.isnan(value)
     assert found(intake, "spread not converted") == [("ask", cell, "r1")]
+    assert word in intake.findings.set_index("rule")["wrong"]["spread not converted"]
+    assert intake.ledger.empty
     with_sd = take(change)
     assert found(with_sd, "spread not converted") == []
 

@@ -25,11 +25,11 @@ class Part(BaseModel):
 class Defaults(Part):
     """What holds for columns that the sheet does not have, and for blank cells in them."""
 
-    spread_kind: Literal["SD", "SE", "CI", "variance", "CV%", "IQR", "range", "unlabelled"] = Field(
-        "SD", description="what a spread is when its kind is not typed"
-    )
-    centre_kind: Literal["mean", "median", "geometric mean", "mean of logs"] = Field(
-        "mean", description="what the typed centre is"
+    spread_kind: Literal[
+        "SD", "SE", "CI", "CI (z)", "variance", "CV%", "IQR", "range", "unlabelled"
+    ] = Field("SD", description="what a spread is when its kind is not typed")
+    centre_kind: Literal["mean", "median", "geometric mean", "mean of logs", "mean of log10"] = (
+        Field("mean", description="what the typed centre is; logs are natural ones unless named")
     )
     design: str = Field("independent", description="design of the comparison")
     n_meaning: Literal["replicate", "subsample", "individual"] = Field(

@@ -13,6 +13,7 @@ from drystone.settings.model import Settings
 from drystone.sheet.notes import Note
 from drystone.sheet.raw import RawSheet, RawTable, show
 from drystone.tables.comparisons import NUMBER_COLUMNS
+from drystone.words import arms
 
 Floats = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
@@ -34,6 +35,8 @@ class Draft:
     left_out : entries that the team itself left out, with rule and reason
     sds : by arm, the SD to use, NaN when none
     sd_rules : by arm, where that SD came from, blank when none
+    pooled : entries in which at least one SD is one value for both arms
+    mean_recovered : by arm, entries whose mean was computed from another centre
     derivations : records for the derivations table
     studies : the studies table, typed; by column
     """
@@ -48,8 +51,15 @@ class Draft:
     left_out: dict[int, tuple[str, str]] = field(default_factory=dict)
     sds: dict[str, Floats] = field(default_factory=dict)
     sd_rules: dict[str, Texts] = field(default_factory=dict)
+    pooled: Mask = field(init=False)
+    mean_recovered: dict[str, Mask] = field(init=False)
     derivations: list[dict[str, Any]] = field(default_factory=list)
     studies: dict[str, list[Any]] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        """Begin without anything recovered."""
+        self.pooled = np.zeros(self.size, dtype=bool)
+        self.mean_recovered = {arm: np.zeros(self.size, dtype=bool) for arm in arms.ARMS}
 
     @property
     def table(self) -> RawTable:

@@ -102,7 +102,7 @@ def _where(draft: Draft) -> dict[str, Any]:
         found[f"{arm}_sd_value"] = draft.sds[arm]
     for arm in arms.ARMS:
         found[f"{arm}_sd_rule"] = pd.Series(draft.sd_rules[arm], dtype="str")
-    found["sd_pooled"] = np.zeros(draft.size, dtype=bool)
+    found["sd_pooled"] = draft.pooled
     return found
 
 

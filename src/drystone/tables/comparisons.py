@@ -62,7 +62,10 @@ def _arm(arm: str) -> dict[str, pa.Column]:
     group = f"{arm}, more"
     return {
         f"{arm}_centre_kind": text(
-            f"what the {arm} mean is", allowed=spreads.CENTRE_KINDS, group=group
+            f"what the {arm} mean is: a median stands in the column of the mean, and so does the "
+            "mean of natural or of base-10 logarithms, with its SD or SE of logarithms",
+            allowed=spreads.CENTRE_KINDS,
+            group=group,
         ),
         f"{arm}_n_meaning": text(
             f"what the {arm} n counts", allowed=spreads.N_MEANINGS, group=group
@@ -92,16 +95,37 @@ def _row() -> dict[str, pa.Column]:
         "pooled_kind": text(
             "what the pooled spread is", allowed=spreads.POOLED_KINDS, group=pooled
         ),
-        "grand_mean": number("mean of the whole table", unit="outcome unit", group=pooled),
-        "number_of_means": number("means compared in the table", unit="count", group=pooled),
-        "error_df": number("degrees of freedom of the error", unit="count", group=pooled),
+        "difference_lower": number(
+            "lower limit of the difference of the two means", unit=SAME, group=pooled
+        ),
+        "difference_upper": number(
+            "upper limit of the difference of the two means", unit=SAME, group=pooled
+        ),
+        "grand_mean": number(
+            "mean of the whole table, for a CV% of the grand mean",
+            unit="outcome unit",
+            group=pooled,
+        ),
+        "number_of_means": number(
+            "means compared by the HSD or F: 2 when F compares these two arms alone",
+            unit="count",
+            group=pooled,
+        ),
+        "error_df": number(
+            "degrees of freedom of the error, for an LSD, HSD or p", unit="count", group=pooled
+        ),
         "confidence_percent": number(
-            "level of the limits; 95 when blank", unit="%", at_least=1, group=pooled
+            "level of the limits, of the LSD or HSD (95 for 0.05); 95 when blank",
+            unit="%",
+            at_least=1,
+            group=pooled,
         ),
         "test_kind": text(
-            "which test statistic is given", allowed=spreads.TEST_KINDS, group=pooled
+            "which statistic of the difference is given: t, F or exact two-sided p",
+            allowed=spreads.TEST_KINDS,
+            group=pooled,
         ),
-        "test_value": number("value of the test statistic", group=pooled),
+        "test_value": number("value of that statistic", group=pooled),
         "trial": text("trial or experiment within the study", group=design),
         "date": text("sampling date, year or season", group=design),
         "design": text(

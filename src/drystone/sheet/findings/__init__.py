@@ -26,7 +26,8 @@ from drystone.sheet.findings.means import check_means
 from drystone.sheet.findings.normality import doubtful_normality
 from drystone.sheet.findings.outcomes import check_outcomes, check_scales, check_units
 from drystone.sheet.findings.row_ids import check_row_ids
-from drystone.sheet.findings.spreads import find_sds, unused_spreads
+from drystone.sheet.findings.spreads import find_sds
+from drystone.sheet.findings.unused_spreads import unused_spreads
 from drystone.sheet.findings.words import check_words, fill_defaults, unusual_meanings
 from drystone.sheet.notes import Note
 

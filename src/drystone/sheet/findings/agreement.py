@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from drystone.sheet.conversions import Conversion
+from drystone.sheet.conversion import ArmNumbers, Conversion
 from drystone.sheet.draft import Draft, Floats, Mask, where
 from drystone.sheet.notes import Note
 from drystone.sheet.rounding import half_unit
@@ -16,7 +16,12 @@ SAME = 0.02  # relative difference that is not worth a question
 
 
 def disagreeing(
-    draft: Draft, arm: str, conversion: Conversion, rows: Mask, typed: Floats, converted: Floats
+    draft: Draft,
+    arm: str,
+    conversion: Conversion[ArmNumbers],
+    rows: Mask,
+    typed: Floats,
+    converted: Floats,
 ) -> Iterator[Note]:
     """Ask about rows whose typed and converted SDs differ by more than rounding can explain."""
     for row in where(rows):
@@ -36,7 +41,9 @@ def disagreeing(
         )
 
 
-def _rounding(draft: Draft, arm: str, conversion: Conversion, row: int, sd: float) -> float:
+def _rounding(
+    draft: Draft, arm: str, conversion: Conversion[ArmNumbers], row: int, sd: float
+) -> float:
     """Part of ``sd`` that rounding of the typed spread can explain."""
     if conversion.inputs[0] != "spread":
         return 0.0

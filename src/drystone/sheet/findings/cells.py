@@ -16,6 +16,19 @@ from drystone.words import arms, levels
 NEEDED_NUMBERS = frozenset(
     f"{arm}_{what}" for arm in arms.ARMS for what in ("mean", "n", "sd", "spread", "lower", "upper")
 ) | {"confidence_percent"}
+SPREAD_NUMBERS = frozenset(
+    f"{arm}_{what}" for arm in arms.ARMS for what in ("q1", "q3", "min", "max")
+) | frozenset(
+    [
+        "pooled_spread",
+        "difference_lower",
+        "difference_upper",
+        "grand_mean",
+        "number_of_means",
+        "error_df",
+        "test_value",
+    ]
+)
 NEEDED_TEXTS = frozenset(NUMBERS_USED) - frozenset(NUMBER_COLUMNS)
 NEARLY_ALL = 0.8  # share of numbers in a moderator from which the rest looks like a mistake
 
@@ -76,8 +89,11 @@ def _number_column(draft: Draft, name: str, cells: list[Cell]) -> Iterator[Note]
     needed = name in NEEDED_NUMBERS
     for row, wrong in wrongs.items():
         rule = ERROR if _is_error(cells[row]) else UNREADABLE
-        level = levels.STOP if needed else levels.WARN
-        effect = "" if needed else "; it counts as missing"
+        level, effect = levels.WARN, "; it counts as missing"
+        if needed:
+            level, effect = levels.STOP, ""
+        elif name in SPREAD_NUMBERS:
+            level, effect = levels.ASK, "; no SD is computed from it until somebody decides"
         yield draft.note(level, rule, name, row, f"the cell {wrong}{effect}", _todo(cells[row]))
 
 

@@ -8,7 +8,7 @@ import numpy as np
 
 from drystone.sheet.draft import Draft, where
 from drystone.sheet.notes import Note
-from drystone.words import arms, levels
+from drystone.words import arms, levels, spreads
 
 
 def check_means(draft: Draft) -> Iterator[Note]:
@@ -16,6 +16,8 @@ def check_means(draft: Draft) -> Iterator[Note]:
     for arm in arms.ARMS:
         column = f"{arm}_mean"
         means = draft.number(column)
+        # logarithms may be zero or negative; their antilogs are checked where they are taken
+        raw = ~np.isin(draft.text(f"{arm}_centre_kind"), spreads.LOG_CENTRES)
         yield from draft.notes(
             levels.STOP,
             "missing mean",
@@ -28,7 +30,7 @@ def check_means(draft: Draft) -> Iterator[Note]:
             levels.STOP,
             "zero mean",
             column,
-            where(means == 0),
+            where(raw & (means == 0)),
             f"the {arm} mean is zero, and a ratio with it has no logarithm",
             "check the paper (a detection limit?); nothing is added to zeros",
         )
@@ -36,7 +38,7 @@ def check_means(draft: Draft) -> Iterator[Note]:
             levels.STOP,
             "negative mean",
             column,
-            where(means < 0),
+            where(raw & (means < 0)),
             f"the {arm} mean is negative, so the outcome has no true zero; both means negative "
             "is not a rescue",
             "check the paper: a change or an index is no outcome for a ratio",

@@ -47,7 +47,8 @@ def fill_defaults(draft: Draft) -> Iterator[Note]:
         spread = ~np.isnan(draft.number(f"{arm}_spread"))
         limits = ~np.isnan(draft.number(f"{arm}_lower") + draft.number(f"{arm}_upper"))
         kinds[blank & spread] = defaults.spread_kind
-        for row in where(blank & ~spread & limits & np.isnan(draft.number(f"{arm}_sd"))):
+        bare = blank & ~spread & np.isnan(draft.number(f"{arm}_sd"))
+        for row in where(bare & limits):
             kinds[row] = spreads.CI
             yield draft.note(
                 levels.FIXED,
@@ -57,34 +58,18 @@ def fill_defaults(draft: Draft) -> Iterator[Note]:
                 f"two limits of the {arm} mean without a kind are taken as a confidence interval",
                 f"type the kind in {arm}_spread_kind when they are something else",
             )
+        for kind, ends in ((spreads.RANGE, ("min", "max")), (spreads.IQR, ("q1", "q3"))):
+            both = ~np.isnan(sum(draft.number(f"{arm}_{end}") for end in ends))
+            kinds[bare & ~limits & both] = kind  # these columns say themselves what they hold
         _fill(draft, f"{arm}_centre_kind", defaults.centre_kind)
         _fill(draft, f"{arm}_n_meaning", defaults.n_meaning)
     _fill(draft, "design", defaults.design)
 
 
 def unusual_meanings(draft: Draft) -> Iterator[Note]:
-    """Centres that are no means, n that counts subsamples, designs with dependent arms."""
+    """Counts of subsamples as n, and designs with dependent arms."""
     for arm in arms.ARMS:
-        centres, column = draft.text(f"{arm}_centre_kind"), f"{arm}_centre_kind"
-        yield from _each(
-            draft,
-            levels.STOP,
-            "mean of logs",
-            column,
-            where(centres == "mean of logs"),
-            "the centre is a mean of logarithms, which cannot stand in a ratio of means",
-            "type the mean on the original scale",
-        )
-        yield from _each(
-            draft,
-            levels.ASK,
-            "centre is no mean",
-            column,
-            where((centres == "median") | (centres == "geometric mean")),
-            "the centre is no arithmetic mean; it is used as if it were one until somebody decides",
-            "type the mean when the paper gives it, or leave the row out with exclude_reason",
-        )
-        yield from _each(
+        yield from each_typed(
             draft,
             levels.ASK,
             "n counts subsamples",
@@ -95,7 +80,7 @@ def unusual_meanings(draft: Draft) -> Iterator[Note]:
         )
     designs = draft.text("design")
     dependent = [row for row, text in enumerate(designs) if text not in (None, "independent")]
-    yield from _each(
+    yield from each_typed(
         draft,
         levels.ASK,
         "design not used",
@@ -106,7 +91,7 @@ def unusual_meanings(draft: Draft) -> Iterator[Note]:
     )
 
 
-def _each(
+def each_typed(
     draft: Draft, level: str, rule: str, column: str, rows: Sequence[int], wrong: str, todo: str
 ) -> Iterator[Note]:
     """One finding for each typed cell; one for all rows together where a default speaks."""

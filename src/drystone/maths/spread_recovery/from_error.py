@@ -14,9 +14,9 @@ from __future__ import annotations
 
 import numpy as np
 import numpy.typing as npt
-from scipy import special
 
-Floats = npt.NDArray[np.float64]
+from drystone.maths.spread_recovery.arrays import Floats, floats, quiet
+from drystone.maths.spread_recovery.critical import t_quantile, z_quantile
 
 
 def sd_from_se(se: npt.ArrayLike, n: npt.ArrayLike) -> Floats:
@@ -31,8 +31,8 @@ def sd_from_se(se: npt.ArrayLike, n: npt.ArrayLike) -> Floats:
     -------
     (k,) float, unit of the mean
     """
-    se, n = _floats(se), _floats(n)
-    with np.errstate(invalid="ignore", over="ignore"):
+    se, n = floats(se), floats(n)
+    with quiet():
         return np.asarray(se * np.sqrt(n))
 
 
@@ -43,8 +43,8 @@ def sd_from_variance(variance: npt.ArrayLike) -> Floats:
     ----------
     variance : (k,) float, >= 0, squared unit of the mean
     """
-    with np.errstate(invalid="ignore"):
-        return np.asarray(np.sqrt(_floats(variance)))
+    with quiet():
+        return np.asarray(np.sqrt(floats(variance)))
 
 
 def sd_from_cv_percent(cv_percent: npt.ArrayLike, mean: npt.ArrayLike) -> Floats:
@@ -56,8 +56,8 @@ def sd_from_cv_percent(cv_percent: npt.ArrayLike, mean: npt.ArrayLike) -> Floats
     mean : (k,) float, > 0, the mean that the CV belongs to: the arm's own, or the grand mean for
         the CV of an analysis of variance
     """
-    with np.errstate(invalid="ignore", over="ignore"):
-        return np.asarray(_floats(cv_percent) * _floats(mean) / 100.0)
+    with quiet():
+        return np.asarray(floats(cv_percent) * floats(mean) / 100.0)
 
 
 def sd_from_limits(
@@ -83,8 +83,8 @@ def sd_from_limits(
     Takes the interval to be mean +- t(n - 1) SE. Not for back-transformed, bootstrap or pooled
     intervals.
     """
-    with np.errstate(invalid="ignore", over="ignore"):
-        half = _floats(upper) / 2.0 - _floats(lower) / 2.0
+    with quiet():
+        half = floats(upper) / 2.0 - floats(lower) / 2.0
     return sd_from_half_width(half, n, confidence_percent)
 
 
@@ -98,27 +98,44 @@ def sd_from_half_width(
     half_width : (k,) float, >= 0, unit of the mean
     n, confidence_percent : as in `sd_from_limits`
     """
-    with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
+    with quiet():
         return np.asarray(
-            np.sqrt(_floats(n)) * _floats(half_width) / t_quantile(n, confidence_percent)
+            np.sqrt(floats(n)) * floats(half_width) / t_quantile(n, confidence_percent)
         )
 
 
-def t_quantile(n: npt.ArrayLike, confidence_percent: npt.ArrayLike) -> Floats:
-    """Two-sided quantile of Student's distribution with n - 1 degrees of freedom; NaN for n < 2."""
-    df, level = np.broadcast_arrays(_floats(n) - 1.0, _floats(confidence_percent) / 100.0)
-    known = (df >= 1.0) & (level > 0.0) & (level < 1.0)
-    quantile = np.full(df.shape, np.nan)
-    quantile[known] = special.stdtrit(df[known], 0.5 + level[known] / 2.0)
-    return quantile
+def sd_from_limits_by_z(
+    lower: npt.ArrayLike,
+    upper: npt.ArrayLike,
+    n: npt.ArrayLike,
+    confidence_percent: npt.ArrayLike,
+) -> Floats:
+    """SD from confidence limits that were made as mean +- z SE, s = sqrt(n) (U - L) / (2 z).
+
+    Parameters
+    ----------
+    lower, upper, n, confidence_percent : as in `sd_from_limits`
+
+    Notes
+    -----
+    For papers that say so. With few replicates it differs much from t: at n 6 and 95 % the SD is
+    31 % larger.
+    """
+    with quiet():
+        half = floats(upper) / 2.0 - floats(lower) / 2.0
+    return sd_from_half_width_by_z(half, n, confidence_percent)
+
+
+def sd_from_half_width_by_z(
+    half_width: npt.ArrayLike, n: npt.ArrayLike, confidence_percent: npt.ArrayLike
+) -> Floats:
+    """SD from half the width of an interval mean +- z SE, s = sqrt(n) h / z."""
+    with quiet():
+        return np.asarray(np.sqrt(floats(n)) * floats(half_width) / z_quantile(confidence_percent))
 
 
 def limit_asymmetry(mean: npt.ArrayLike, lower: npt.ArrayLike, upper: npt.ArrayLike) -> Floats:
     """How unevenly limits lie about the mean, |(U - m) - (m - L)| / (U - L); 0 when centred."""
-    mean, lower, upper = _floats(mean), _floats(lower), _floats(upper)
-    with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
+    mean, lower, upper = floats(mean), floats(lower), floats(upper)
+    with quiet():
         return np.asarray(np.abs((upper - mean) - (mean - lower)) / (upper - lower))
-
-
-def _floats(values: npt.ArrayLike) -> Floats:
-    return np.asarray(values, dtype=np.float64)

@@ -1,0 +1,138 @@
+"""SDs from other printed spreads, one file for each origin.
+
+Of one arm: `from_error`, `from_quantiles`, `log_scale`. Of both arms together: `from_test`,
+`from_table_error`. Around them: `combine`, `change_scores`, `bounds`.
+"""
+
+from drystone.maths.spread_recovery.bounds import (
+    largest_sd_above_zero,
+    largest_sd_between,
+    largest_sd_printed_as_zero,
+)
+from drystone.maths.spread_recovery.change_scores import (
+    correlation_from_changes,
+    sd_of_change,
+    sd_of_final,
+    se_of_mean_change,
+)
+from drystone.maths.spread_recovery.combine import Combined, combine_groups
+from drystone.maths.spread_recovery.critical import t_quantile, t_quantile_of_df, z_quantile
+from drystone.maths.spread_recovery.from_error import (
+    limit_asymmetry,
+    sd_from_cv_percent,
+    sd_from_half_width,
+    sd_from_half_width_by_z,
+    sd_from_limits,
+    sd_from_limits_by_z,
+    sd_from_se,
+    sd_from_variance,
+)
+from drystone.maths.spread_recovery.from_quantiles import (
+    SkewTest,
+    expected_range,
+    five_number_weights,
+    mean_from_five_numbers,
+    mean_from_quartiles,
+    mean_from_range,
+    quartile_width,
+    range_width,
+    sd_from_five_numbers,
+    sd_from_quartiles,
+    sd_from_range,
+    skewed_five_numbers,
+    skewed_quartiles,
+    skewed_range,
+)
+from drystone.maths.spread_recovery.from_table_error import (
+    pooled_sd,
+    sd_from_hsd,
+    sd_from_lsd,
+    sd_from_mse,
+    sd_from_sed,
+    sd_from_sem,
+    sd_from_table_cv_percent,
+)
+from drystone.maths.spread_recovery.from_test import (
+    sd_from_difference_limits,
+    sd_from_f,
+    sd_from_p,
+    sd_from_se_of_difference,
+    sd_from_t,
+    t_from_f,
+    t_from_p,
+)
+from drystone.maths.spread_recovery.log_scale import (
+    LogRatio,
+    Moments,
+    from_log,
+    from_log10,
+    log_sd_from_limits,
+    ratio_of_arithmetic_means,
+    ratio_of_geometric_means,
+    to_log,
+)
+from drystone.maths.spread_recovery.studentised_range import (
+    studentised_range_cdf,
+    studentised_range_quantile,
+)
+
+__all__ = [
+    "Combined",
+    "LogRatio",
+    "Moments",
+    "SkewTest",
+    "combine_groups",
+    "correlation_from_changes",
+    "expected_range",
+    "five_number_weights",
+    "from_log",
+    "from_log10",
+    "largest_sd_above_zero",
+    "largest_sd_between",
+    "largest_sd_printed_as_zero",
+    "limit_asymmetry",
+    "log_sd_from_limits",
+    "mean_from_five_numbers",
+    "mean_from_quartiles",
+    "mean_from_range",
+    "pooled_sd",
+    "quartile_width",
+    "range_width",
+    "ratio_of_arithmetic_means",
+    "ratio_of_geometric_means",
+    "sd_from_cv_percent",
+    "sd_from_difference_limits",
+    "sd_from_f",
+    "sd_from_five_numbers",
+    "sd_from_half_width",
+    "sd_from_half_width_by_z",
+    "sd_from_hsd",
+    "sd_from_limits",
+    "sd_from_limits_by_z",
+    "sd_from_lsd",
+    "sd_from_mse",
+    "sd_from_p",
+    "sd_from_quartiles",
+    "sd_from_range",
+    "sd_from_se",
+    "sd_from_se_of_difference",
+    "sd_from_sed",
+    "sd_from_sem",
+    "sd_from_t",
+    "sd_from_table_cv_percent",
+    "sd_from_variance",
+    "sd_of_change",
+    "sd_of_final",
+    "se_of_mean_change",
+    "skewed_five_numbers",
+    "skewed_quartiles",
+    "skewed_range",
+    "studentised_range_cdf",
+    "studentised_range_quantile",
+    "t_from_f",
+    "t_from_p",
+    "t_quantile",
+    "t_quantile_of_df",
+    "to_log",
+    "z_quantile",
+]
