@@ -1,10 +1,10 @@
 """Whether an SD looks like those of its outcome, or like a standard error.
 
 Symbols: s printed SD; m mean; n replicates; c = ln(s / m). Among the arms of an outcome ln CV is
-taken as normal around ``location`` with SD ``scale`` (one arm in ten three times as far), and
+taken as normal around ``location`` with SD ``scale`` (one study in ten three times as far), and
 (n - 1) s^2 / sigma^2 of an arm as chi-squared with n - 1 degrees of freedom. So an arm with few
-replicates may lie far out by chance alone. Robust location and scale, the share of wide arms and
-all limits here: common practice, no source.
+replicates may lie far out by chance alone. Robust location and scale, the shares between and
+within studies, the share of wide ones and all limits: common practice, no source.
 
 References
 ----------
@@ -99,49 +99,68 @@ def log_sd_variance(n: npt.ArrayLike) -> Floats:
     return np.asarray(special.polygamma(1, half) / 4.0)
 
 
-def log_density(log_cv: Floats, n: Floats, location: Floats, scale: Floats) -> Floats:
-    """Log density of the ln CVs of a row, whose arms share one true CV.
+def log_density(log_cv: Floats, n: Floats, location: Floats, scale: Floats, block: Ints) -> Floats:
+    """Log density of the ln CVs of each block of arms, as of the arms of one study.
+
+    Half of the variance scale^2 lies between blocks and half between the arms of a block, so ten
+    arms of a study are far less than ten studies. Arms take up their half by fewer degrees of
+    freedom, which keeps the shape of the chi-squared law and its long lower tail.
 
     Parameters
     ----------
-    log_cv : (k, a) float, ln(s / m) of up to ``a`` arms; NaN where an arm has none
-    n : (k, a) float, > 1 where ``log_cv`` is given
+    log_cv : (k,) float, ln(s / m) of each arm
+    n : (k,) float, > 1
     location, scale : (k,) float, of the outcome's ln CV
+    block : (k,) int, sorted, counted from 0 without gaps
+
+    Returns
+    -------
+    (b,) float, one for each block
     """
+    half = scale / np.sqrt(2.0)
+    df = 2.0 * _inverse_trigamma(4.0 * (log_sd_variance(n) + half**2))
+    away = log_cv - log_sd_bias(n) + log_sd_bias(df + 1.0) - location
+    starts = np.searchsorted(block, np.arange(block[-1] + 1))
     parts = []
     for share, width in ((1.0 - WIDE_SHARE, 1.0), (WIDE_SHARE, WIDE)):
-        nodes = location[:, None] + width * scale[:, None] * _NODES
-        inner = _log_chi(log_cv[:, :, None] - nodes[:, None, :], n[:, :, None])
-        total = np.nansum(inner, axis=1) + np.log(share * _WEIGHTS)
+        inner = _log_chi(away[:, None] - width * half[:, None] * _NODES, df[:, None])
+        total = np.add.reduceat(inner, starts, axis=0) + np.log(share * _WEIGHTS)
         parts.append(special.logsumexp(total, axis=1))
     return np.asarray(np.logaddexp(*parts))
 
 
-def log_ratio_se(log_cv: Floats, n: Floats, location: Floats, scale: Floats) -> Floats:
+def log_ratio_se(log_cv: Floats, n: Floats, location: Floats, scale: Floats, block: Ints) -> Floats:
     """Log likelihood ratio of "these SDs are standard errors" against "they are SDs".
 
-    With s = sigma / sqrt(n) times chance, s sqrt(n) has the law of an SD; the logarithm only
-    shifts, so no Jacobian is needed. With the sign of ln n turned (``n`` in the shift only), the
-    reverse question is `log_ratio_sd`.
+    A standard error times sqrt(n) has the law of an SD; the logarithm only shifts, so no Jacobian
+    is needed.
 
     Parameters
     ----------
-    log_cv, n, location, scale : as in `log_density`
+    log_cv, n, location, scale, block : as in `log_density`
+
+    Returns
+    -------
+    (b,) float, one for each block
     """
-    there = log_density(log_cv + 0.5 * np.log(n), n, location, scale)
-    return there - log_density(log_cv, n, location, scale)
+    there = log_density(log_cv + 0.5 * np.log(n), n, location, scale, block)
+    return there - log_density(log_cv, n, location, scale, block)
 
 
-def log_ratio_sd(log_cv: Floats, n: Floats, location: Floats, scale: Floats) -> Floats:
+def log_ratio_sd(log_cv: Floats, n: Floats, location: Floats, scale: Floats, block: Ints) -> Floats:
     """Log likelihood ratio of "the standard errors typed here were SDs already".
 
     Parameters
     ----------
-    log_cv : (k, a) float, ln CV of the SDs that were computed as standard error times sqrt(n)
-    n, location, scale : as in `log_density`
+    log_cv : (k,) float, ln CV of the SDs that were computed as standard error times sqrt(n)
+    n, location, scale, block : as in `log_density`
+
+    Returns
+    -------
+    (b,) float, one for each block
     """
-    there = log_density(log_cv - 0.5 * np.log(n), n, location, scale)
-    return there - log_density(log_cv, n, location, scale)
+    there = log_density(log_cv - 0.5 * np.log(n), n, location, scale, block)
+    return there - log_density(log_cv, n, location, scale, block)
 
 
 def too_small(log_cv: Floats, n: Floats, location: Floats, scale: Floats, sds: float) -> Floats:
@@ -171,12 +190,21 @@ def _chi(log_cv: Floats, n: Floats, log_sigma: Floats) -> Floats:
     return np.asarray(0.5 * (n - 1.0) * np.exp(np.clip(2.0 * (log_cv - log_sigma), -700.0, 700.0)))
 
 
-def _log_chi(distance: Floats, n: Floats) -> Floats:
+def _log_chi(distance: Floats, df: Floats) -> Floats:
     """Log density of ln s at ``distance`` from ln sigma."""
-    half = (n - 1.0) / 2.0
+    half = df / 2.0
     power = np.exp(np.clip(2.0 * distance, -700.0, 700.0))
     constant = half * np.log(half) - special.gammaln(half) + np.log(2.0)
-    return np.asarray(constant + 2.0 * half * distance - half * power)
+    return np.asarray(constant + df * distance - half * power)
+
+
+def _inverse_trigamma(value: Floats) -> Floats:
+    """Where trigamma takes ``value`` > 0; Newton's method on its reciprocal, which is convex."""
+    at = 0.5 + 1.0 / value
+    for _ in range(20):
+        found = special.polygamma(1, at)
+        at = at + found * (1.0 - found / value) / special.polygamma(2, at)
+    return np.asarray(at)
 
 
 def _middle_and_scale(

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -17,8 +17,9 @@ from drystone.words import arms, levels
 
 FROM_SE = "from SE"
 AS_TYPED = "as typed"
-LIKELIER = math.log(20.0)  # strong evidence, Kass and Raftery 1995 (memory), J Am Stat Assoc 90:773
-CENTRAL = 1.5  # SDs from the outcome's middle within which the other reading must fall
+LIKELIER = math.log(150.0)  # very strong: Kass and Raftery 1995, J Am Stat Assoc 90:773 (memory)
+CENTRAL = 2.5  # SDs from the outcome's middle within which the other reading must fall
+Ratio = Callable[[Floats, Floats, Floats, Floats, np.ndarray], Floats]
 FAR, CHANCE = 2.5, 1e-3
 
 
@@ -28,6 +29,7 @@ class _Arms:
 
     row: np.ndarray
     column: np.ndarray  # 0 control, 1 treatment
+    study: np.ndarray  # counted from 0
     log_cv: Floats
     n: Floats
     location: Floats
@@ -61,13 +63,13 @@ def screen_spreads(draft: Draft) -> Iterator[Note]:
 
 def _arms(draft: Draft, rows: list[int]) -> _Arms | None:
     parts = []
-    for column, arm in enumerate(arms.ARMS):
+    for which, arm in enumerate(arms.ARMS):
         mean, n = draft.number(f"{arm}_mean")[rows], draft.number(f"{arm}_n")[rows]
         sd = draft.sds[arm][rows]
         with np.errstate(all="ignore"):
             log_cv = np.log(sd) - np.log(mean)
         known = np.flatnonzero((mean > 0) & (sd > 0) & (n >= 2) & np.isfinite(log_cv))
-        parts.append((np.array(rows)[known], np.full(known.size, column), log_cv[known], n[known]))
+        parts.append((np.array(rows)[known], np.full(known.size, which), log_cv[known], n[known]))
     row, column, log_cv, n = (np.concatenate(part) for part in zip(*parts, strict=True))
     if row.size == 0:
         return None
@@ -78,15 +80,14 @@ def _arms(draft: Draft, rows: list[int]) -> _Arms | None:
     ok = ~np.isnan(near.scale)
     if not ok.any():
         return None
-    return _Arms(row[ok], column[ok], log_cv[ok], n[ok], near.location[ok], near.scale[ok])
+    return _Arms(
+        row[ok], column[ok], studies[ok], log_cv[ok], n[ok], near.location[ok], near.scale[ok]
+    )
 
 
 def _se_for_sd(draft: Draft, name: str, found: _Arms) -> Iterator[tuple[tuple[int, int], Note]]:
-    ratio = screen.log_ratio_se(
-        found.log_cv[:, None], found.n[:, None], found.location, found.scale
-    )
     moved = found.away + 0.5 * np.log(found.n) / found.spread
-    for at, factor in _likely(draft, found, ratio, moved, AS_TYPED):
+    for at, factor in _likely(draft, found, screen.log_ratio_se, moved, AS_TYPED):
         arm, row = arms.ARMS[int(found.column[at])], int(found.row[at])
         sd = float(draft.sds[arm][row])
         column = f"{arm}_sd" if not np.isnan(draft.number(f"{arm}_sd")[row]) else f"{arm}_spread"
@@ -100,7 +101,7 @@ def _se_for_sd(draft: Draft, name: str, found: _Arms) -> Iterator[tuple[tuple[in
                 f"an SD of {sd:.4g} is a CV of {_percent(found.log_cv[at])}, while "
                 f"{_percent(found.location[at])} is typical of '{name}'; as a standard error it "
                 f"would give the SD {sd * math.sqrt(found.n[at]):.4g}, "
-                f"{_times(factor)} as likely; nothing was changed",
+                f"{_times(factor)} as likely for the study's arms; nothing was changed",
                 "look in the paper what the spread is; if a standard error, move it to "
                 f"{arm}_spread and type SE as its kind",
             ),
@@ -108,11 +109,8 @@ def _se_for_sd(draft: Draft, name: str, found: _Arms) -> Iterator[tuple[tuple[in
 
 
 def _sd_for_se(draft: Draft, name: str, found: _Arms) -> Iterator[tuple[tuple[int, int], Note]]:
-    ratio = screen.log_ratio_sd(
-        found.log_cv[:, None], found.n[:, None], found.location, found.scale
-    )
     moved = found.away - 0.5 * np.log(found.n) / found.spread
-    for at, factor in _likely(draft, found, ratio, moved, FROM_SE):
+    for at, factor in _likely(draft, found, screen.log_ratio_sd, moved, FROM_SE):
         arm, row = arms.ARMS[int(found.column[at])], int(found.row[at])
         typed = float(draft.number(f"{arm}_spread")[row])
         yield (
@@ -124,34 +122,44 @@ def _sd_for_se(draft: Draft, name: str, found: _Arms) -> Iterator[tuple[tuple[in
                 row,
                 f"the standard error gives a CV of {_percent(found.log_cv[at])}, while "
                 f"{_percent(found.location[at])} is typical of '{name}'; {typed:.4g} as an SD is "
-                f"{_times(factor)} as likely; nothing was changed",
+                f"{_times(factor)} as likely for the study's arms; nothing was changed",
                 f"look in the paper what the spread is; if an SD, type SD as {arm}_spread_kind",
             ),
         )
 
 
 def _likely(
-    draft: Draft, found: _Arms, ratio: Floats, moved: Floats, rule: str
+    draft: Draft, found: _Arms, ratio: Ratio, moved: Floats, rule: str
 ) -> Iterator[tuple[int, float]]:
-    """Arms of rows that as a whole speak for the other reading, with the ratio for the row.
+    """Arms of studies that as a whole speak for the other reading, with the study's log ratio.
 
-    The arms of a row share their study's CV, so together they count as one arm: the mean of their
-    log ratios, and none may speak against it.
+    Of such a study, the rows whose every arm speaks for it too and would then look usual.
     """
-    fits = np.array(
-        [
-            draft.sd_rules[arms.ARMS[c]][r] == rule
-            for r, c in zip(found.row, found.column, strict=True)
-        ]
-    )
-    by_row: dict[int, list[int]] = {}
-    for at in np.flatnonzero(fits):
-        by_row.setdefault(int(found.row[at]), []).append(int(at))
-    for places in by_row.values():
-        together = float(np.mean(ratio[places]))
-        central = (np.abs(moved[places]) < CENTRAL).all()
-        if together > LIKELIER and central and (ratio[places] > 0).all():
-            yield from ((at, together) for at in places)
+    pairs = zip(found.row, found.column, strict=True)
+    at = np.flatnonzero([draft.sd_rules[arms.ARMS[c]][r] == rule for r, c in pairs])
+    if at.size == 0:
+        return
+    given = (found.log_cv[at], found.n[at], found.location[at], found.scale[at])
+    alone = ratio(*given, np.arange(at.size))
+    study = _study_ratios(found.study[at], ratio, given)
+    good = (alone > 0) & (np.abs(moved[at]) < CENTRAL) & (study > LIKELIER)
+    bad_rows = set(found.row[at][~good])
+    for place, factor in zip(at, study, strict=True):
+        if int(found.row[place]) not in bad_rows:
+            yield int(place), float(factor)
+
+
+def _study_ratios(
+    studies: np.ndarray, ratio: Ratio, given: tuple[Floats, Floats, Floats, Floats]
+) -> Floats:
+    """Log ratio of each arm's study, from its different arms: a shared one counts once."""
+    seen = np.round(np.column_stack([studies, given[0], given[1]]), 9)
+    _, kept = np.unique(seen, axis=0, return_index=True)
+    kept = kept[np.argsort(studies[kept], kind="stable")]
+    names, block = np.unique(studies[kept], return_inverse=True)
+    log_cv, n, location, scale = (part[kept] for part in given)
+    found = ratio(log_cv, n, location, scale, block)
+    return np.asarray(found[np.searchsorted(names, studies)])
 
 
 def _far_out(draft: Draft, name: str, found: _Arms, told: set[tuple[int, int]]) -> Iterator[Note]:
