@@ -118,7 +118,8 @@ def log_density(log_cv: Floats, n: Floats, location: Floats, scale: Floats, bloc
     (b,) float, one for each block
     """
     half = scale / np.sqrt(2.0)
-    df = 2.0 * _inverse_trigamma(4.0 * (log_sd_variance(n) + half**2))
+    noise, back = np.unique(log_sd_variance(n) + half**2, return_inverse=True)
+    df = 2.0 * _inverse_trigamma(4.0 * noise)[back]
     away = log_cv - log_sd_bias(n) + log_sd_bias(df + 1.0) - location
     starts = np.searchsorted(block, np.arange(block[-1] + 1))
     parts = []
@@ -201,7 +202,7 @@ def _log_chi(distance: Floats, df: Floats) -> Floats:
 def _inverse_trigamma(value: Floats) -> Floats:
     """Where trigamma takes ``value`` > 0; Newton's method on its reciprocal, which is convex."""
     at = 0.5 + 1.0 / value
-    for _ in range(20):
+    for _ in range(8):
         found = special.polygamma(1, at)
         at = at + found * (1.0 - found / value) / special.polygamma(2, at)
     return np.asarray(at)

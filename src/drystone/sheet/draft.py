@@ -36,6 +36,7 @@ class Draft:
     sd_rules : by arm, where that SD came from, blank when none
     derivations : records for the derivations table
     studies : the studies table, typed; by column
+    worked_out : what later findings look up again and again, by their own names
     """
 
     raw: RawSheet
@@ -50,6 +51,7 @@ class Draft:
     sd_rules: dict[str, Texts] = field(default_factory=dict)
     derivations: list[dict[str, Any]] = field(default_factory=list)
     studies: dict[str, list[Any]] = field(default_factory=dict)
+    worked_out: dict[Any, Any] = field(default_factory=dict)
 
     @property
     def table(self) -> RawTable:

@@ -32,9 +32,9 @@ def impossible_sds(draft: Draft) -> Iterator[Note]:
         end = upper_end(draft, name, rows)
         for arm in arms.ARMS:
             mean, n, sd = draft.number(f"{arm}_mean"), draft.number(f"{arm}_n"), draft.sds[arm]
-            for row in rows:
-                if not (sd[row] > 0 and mean[row] > 0 and n[row] >= 2):
-                    continue
+            at = np.array(rows)
+            reach = largest_sd(mean[at], n[at], 0.0, math.inf if end is None else end)
+            for row in at[(sd[at] > reach) & (mean[at] > 0) & (n[at] >= 2)].tolist():
                 most = _most(float(mean[row]), float(n[row]), math.inf if end is None else end)
                 if sd[row] - half_unit(float(f"{sd[row]:.6g}")) > most:
                     yield _impossible(draft, arm, row, float(sd[row]), most, end)
@@ -52,14 +52,14 @@ def _most(mean: float, n: float, end: float) -> float:
 def _impossible(
     draft: Draft, arm: str, row: int, sd: float, most: float, end: float | None
 ) -> Note:
-    scale = "zero or more" if end is None else f"between 0 and {end:g}"
+    scale = "of zero or more" if end is None else f"between 0 and {end:g}"
     typed = not np.isnan(draft.number(f"{arm}_sd")[row])
     return draft.note(
         levels.ASK,
         "SD above the possible",
         f"{arm}_sd" if typed else f"{arm}_spread",
         row,
-        f"the SD {sd:.4g} cannot be: with this mean and n, values of {scale} have an SD of "
+        f"the SD {sd:.4g} cannot be: with this mean and n, values {scale} have an SD of "
         f"{most:.4g} at most; {USED}",
         "look for a slip in mean, SD or n, or a spread of another kind",
     )

@@ -55,15 +55,28 @@ def arm_numbers(draft: Draft, arm: str, row: int, digits: int = DISTINCT) -> Num
 
     Mean and SD together need ``digits`` significant digits; a mean without an SD needs three.
     """
-    mean = float(draft.number(f"{arm}_mean")[row])
-    sd, n = float(draft.sds[arm][row]), float(draft.number(f"{arm}_n")[row])
-    if not np.isfinite(mean) or mean == 0:
+    numbers, mean_digits, sd_digits = _all_arms(draft, arm)[row]
+    if numbers is None or (numbers[1] is None and mean_digits < DISTINCT):
         return None
-    clipped = (_clip(mean), _clip(sd) if sd > 0 else None, n if n == n else None)
-    found = significant_digits(clipped[0])
-    if clipped[1] is None:
-        return clipped if found >= DISTINCT else None
-    return clipped if found + significant_digits(clipped[1]) >= digits else None
+    return numbers if numbers[1] is None or mean_digits + sd_digits >= digits else None
+
+
+def _all_arms(draft: Draft, arm: str) -> list[tuple[Numbers | None, int, int]]:
+    """Numbers of every row's arm with the digits of mean and SD; worked out once for a sheet."""
+    found = draft.worked_out.get(("arms", arm))
+    if found is None:
+        columns = (draft.number(f"{arm}_mean"), draft.sds[arm], draft.number(f"{arm}_n"))
+        found = [_one_arm(*cells) for cells in zip(*(c.tolist() for c in columns), strict=True)]
+        draft.worked_out["arms", arm] = found
+    return found
+
+
+def _one_arm(mean: float, sd: float, n: float) -> tuple[Numbers | None, int, int]:
+    if not np.isfinite(mean) or mean == 0:
+        return None, 0, 0
+    mean, known = _clip(mean), _clip(sd) if sd > 0 else None
+    digits = 0 if known is None else significant_digits(known)
+    return (mean, known, n if n == n else None), significant_digits(mean), digits
 
 
 def names_of(draft: Draft, rows: Iterable[int], shown: int = 4) -> str:
