@@ -188,7 +188,8 @@ def too_large(log_cv: Floats, n: Floats, location: Floats, scale: Floats, sds: f
 
 def _chi(log_cv: Floats, n: Floats, log_sigma: Floats) -> Floats:
     """Half the chi-squared of s against sigma."""
-    return np.asarray(0.5 * (n - 1.0) * np.exp(np.clip(2.0 * (log_cv - log_sigma), -700.0, 700.0)))
+    with np.errstate(over="ignore"):
+        return np.asarray(0.5 * (n - 1.0) * np.exp(np.clip(2 * (log_cv - log_sigma), -700, 700)))
 
 
 def _log_chi(distance: Floats, df: Floats) -> Floats:

@@ -153,7 +153,7 @@ def _study_ratios(
     studies: np.ndarray, ratio: Ratio, given: tuple[Floats, Floats, Floats, Floats]
 ) -> Floats:
     """Log ratio of each arm's study, from its different arms: a shared one counts once."""
-    seen = np.round(np.column_stack([studies, given[0], given[1]]), 9)
+    seen = np.round(np.column_stack([studies, given[0], np.log(given[1])]), 9)
     _, kept = np.unique(seen, axis=0, return_index=True)
     kept = kept[np.argsort(studies[kept], kind="stable")]
     names, block = np.unique(studies[kept], return_inverse=True)
