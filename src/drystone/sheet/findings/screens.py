@@ -183,7 +183,7 @@ def _far_out(draft: Draft, name: str, found: _Arms, told: set[tuple[int, int]]) 
 
 
 def _percent(log_cv: float) -> str:
-    return f"{100 * math.exp(min(max(float(log_cv), -300.0), 300.0)):.2g} %"
+    return f"{100 * math.exp(min(max(float(log_cv), -300.0), 300.0)):.3g} %"
 
 
 def _times(log_factor: float) -> str:

@@ -21,7 +21,7 @@ SURE = 3.0  # sampling SDs
 def swapped_arms(draft: Draft) -> Iterator[Note]:
     """Warn of rows that name or number their arms the other way round than the others do."""
     told = set()
-    for row in _by_names(draft):
+    for row in sorted(set(_by_names(draft))):
         told.add(row)
         yield _note(
             draft,
