@@ -33,7 +33,7 @@ def test_a_plain_row_is_usable_and_silent():
     [
         ({"control_mean": "12,5"}, "unreadable cell", "E2"),
         ({"treatment_sd": "<5"}, "unreadable cell", "I2"),
-        ({"control_n": "3-5"}, "unreadable cell", "G2"),
+        ({"control_n": "a few"}, "unreadable cell", "G2"),
         ({"control_n": datetime.date(2020, 5, 3)}, "unreadable cell", "G2"),
         ({"control_mean": Broken("#DIV/0!")}, "error value", "E2"),
         ({"control_mean": Broken("", unsaved=True)}, "error value", "E2"),

@@ -39,6 +39,7 @@ class Draft:
     mean_recovered : by arm, entries whose mean was computed from another centre
     derivations : records for the derivations table
     studies : the studies table, typed; by column
+    worked_out : what later findings look up again and again, by their own names
     """
 
     raw: RawSheet
@@ -55,6 +56,7 @@ class Draft:
     mean_recovered: dict[str, Mask] = field(init=False)
     derivations: list[dict[str, Any]] = field(default_factory=list)
     studies: dict[str, list[Any]] = field(default_factory=dict)
+    worked_out: dict[Any, Any] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
         """Begin without anything recovered."""

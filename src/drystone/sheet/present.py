@@ -17,7 +17,7 @@ _DANGEROUS = ("=", "+", "-", "@", "\t", "\r")
 
 @dataclass(frozen=True)
 class Line:
-    """All findings of one rule about one column.
+    """All findings of one rule about one column, or about the same column of both arms.
 
     Parameters
     ----------
@@ -48,17 +48,20 @@ class Line:
 def collapse(findings: pd.DataFrame) -> list[Line]:
     """One line for each level, rule, sheet and column: stop first, then ask, warn, fixed.
 
+    The same column of both arms makes one line.
+
     Parameters
     ----------
     findings : as in `drystone.tables.check.FINDINGS`
     """
     if findings.empty:
         return []
-    keys = ["level", "rule", "sheet", "column"]
+    keys = ["level", "rule", "sheet"]
     filled = findings.fillna("")
+    topic = filled["column"].str.removeprefix("control_").str.removeprefix("treatment_")
     lines = [
-        _line(dict(zip(keys, map(str, key), strict=True)), group)
-        for key, group in filled.groupby(keys, sort=False)
+        _line(dict(zip(keys, map(str, key[:3]), strict=True)), group)
+        for key, group in filled.groupby([*(filled[key] for key in keys), topic], sort=False)
     ]
     return sorted(lines, key=lambda line: levels.LEVELS.index(line.level))
 
@@ -94,6 +97,7 @@ def _line(shared: dict[str, str], group: pd.DataFrame) -> Line:
     first = group.iloc[0]
     return Line(
         **shared,
+        column=", ".join(dict.fromkeys(map(str, group["column"]))),
         count=len(group),
         cells=tuple(cells),
         wrong=str(first["wrong"]),

@@ -14,3 +14,17 @@ def half_unit(value: float) -> float:
     mantissa, _, exponent = repr(float(value)).partition("e")
     decimals = len(mantissa.partition(".")[2].rstrip("0")) - int(exponent or 0)
     return float(0.5 * 10.0 ** -max(min(decimals, 300), -300))
+
+
+def significant_digits(value: float) -> int:
+    """Digits of ``value`` as it would be printed, zeros at both ends apart.
+
+    Examples
+    --------
+    >>> significant_digits(0.0120)
+    2
+    >>> significant_digits(1200.0)
+    2
+    """
+    mantissa = repr(abs(float(value))).partition("e")[0]
+    return len(mantissa.replace(".", "").strip("0"))

@@ -19,14 +19,29 @@ from collections.abc import Callable, Iterable
 
 from drystone.sheet.draft import Draft
 from drystone.sheet.findings.arms import unlike_arms
+from drystone.sheet.findings.bounds import impossible_sds, whole_numbers
 from drystone.sheet.findings.cells import mixed_columns, read_cells
 from drystone.sheet.findings.counts import check_counts
 from drystone.sheet.findings.left_out import left_out_by_team, unknown_studies
+from drystone.sheet.findings.lookalikes import chained_arms, shared_arms
+from drystone.sheet.findings.meanings import direction, meaning_of_outcomes
 from drystone.sheet.findings.means import check_means
 from drystone.sheet.findings.normality import doubtful_normality
 from drystone.sheet.findings.outcomes import check_outcomes, check_scales, check_units
+from drystone.sheet.findings.ratios import far_ratios
+from drystone.sheet.findings.repeats import equal_arms, repeated_rows, same_trial
+from drystone.sheet.findings.replication import odd_counts
 from drystone.sheet.findings.row_ids import check_row_ids
+from drystone.sheet.findings.screens import screen_spreads
 from drystone.sheet.findings.spreads import find_sds
+from drystone.sheet.findings.sums import sums_of_outcomes
+from drystone.sheet.findings.swaps import swapped_arms
+from drystone.sheet.findings.time_and_baseline import (
+    repeated_dates,
+    spreads_without_kind,
+    unused_baselines,
+)
+from drystone.sheet.findings.typed_marks import dates_for_names, digitised_precision
 from drystone.sheet.findings.unused_spreads import unused_spreads
 from drystone.sheet.findings.words import check_words, fill_defaults, unusual_meanings
 from drystone.sheet.notes import Note
@@ -41,8 +56,11 @@ STEPS: tuple[Step, ...] = (
     unknown_studies,
     check_outcomes,
     check_scales,
+    meaning_of_outcomes,
+    direction,
     check_units,
     check_words,
+    spreads_without_kind,
     fill_defaults,
     unusual_meanings,
     check_means,
@@ -50,5 +68,21 @@ STEPS: tuple[Step, ...] = (
     find_sds,
     unused_spreads,
     unlike_arms,
+    shared_arms,
+    chained_arms,
+    equal_arms,
+    swapped_arms,
+    repeated_rows,
+    same_trial,
+    sums_of_outcomes,
+    odd_counts,
+    repeated_dates,
+    unused_baselines,
+    impossible_sds,
+    whole_numbers,
+    far_ratios,
+    screen_spreads,
+    digitised_precision,
+    dates_for_names,
     doubtful_normality,
 )

@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from drystone.sheet.draft import Draft, Floats, Texts, blank_numbers, blank_texts, where
+from drystone.sheet.findings.replication import COUNTS, read_ranges
 from drystone.sheet.notes import Note
 from drystone.sheet.parse import broken_words, parse_number, parse_text
 from drystone.sheet.raw import ERROR_LITERALS, Broken, Cell, show
@@ -83,6 +84,8 @@ def _absent(draft: Draft, name: str) -> None:
 def _number_column(draft: Draft, name: str, cells: list[Cell]) -> Iterator[Note]:
     values, wrongs = _numbers(cells)
     draft.numbers[name] = values
+    if name in COUNTS and wrongs:
+        yield from read_ranges(draft, name, cells, values, wrongs)
     if not wrongs:
         return
     draft.unreadable[name] = np.isin(np.arange(draft.size), list(wrongs))

@@ -19,7 +19,7 @@ def doubtful_normality(draft: Draft) -> Iterator[Note]:
         mean, n, sd = draft.number(f"{arm}_mean"), draft.number(f"{arm}_n"), draft.sds[arm]
         known = (mean > 0) & (n >= 1) & (sd > 0)
         index = np.full(draft.size, np.inf)
-        with np.errstate(over="ignore"):
+        with np.errstate(over="ignore", invalid="ignore"):
             at = n[known]
             index[known] = (mean[known] / sd[known]) * (4 * at**1.5 / (1 + 4 * at))
         yield from draft.notes(
