@@ -14,7 +14,7 @@ from openpyxl.utils.cell import get_column_letter
 from python_calamine import CalamineWorkbook, SheetTypeEnum
 
 from drystone.sheet.marked_copy.keep_book import Book
-from drystone.sheet.marked_copy.look import put_text
+from drystone.sheet.marked_copy.look import as_number, put_text
 from drystone.sheet.marked_copy.losses import Loss
 from drystone.sheet.raw import Broken, RawSheet, RawTable, show
 
@@ -22,7 +22,6 @@ _FORBIDDEN = re.compile(r"[\\/*?:\[\]]")
 LONGEST_TITLE = 31
 NARROWEST, WIDEST = 9, 40  # characters of a column
 LOOKED_AT = 200  # rows that decide a column's width
-_NUMBER = re.compile(r"-?(0|[1-9]\d*)(\.\d+)?")
 Brokens = Mapping[str, Mapping[tuple[int, int], Broken]]
 
 
@@ -96,10 +95,9 @@ def _cells(table: RawTable) -> Iterator[tuple[int, int, Any]]:
 
 
 def _number(value: Any) -> Any:
-    """Number of a text that a spreadsheet would show in the same way, else the text itself."""
-    if isinstance(value, str) and _NUMBER.fullmatch(value) and show(float(value)) == value:
-        return float(value)
-    return value
+    """Number of a text that a spreadsheet would show in the same way, else the value itself."""
+    number = as_number(value) if isinstance(value, str) else None
+    return value if number is None else number
 
 
 def _put(cell: Any, value: Any) -> None:

@@ -18,6 +18,7 @@ from drystone.sheet.marked_copy.look import (
     STRONG,
     TITLE,
     WRAPPED,
+    fit_height,
     put_text,
 )
 from drystone.sheet.marked_copy.marks import MOST_NOTES, Marked
@@ -30,7 +31,7 @@ ADVICE = (
     "Mend your own workbook, not this copy: drystone never writes into yours, and the next check "
     "makes a new copy."
 )
-Line = tuple[str, ...]
+Line = tuple[str | int, ...]
 
 
 class Front:
@@ -56,8 +57,7 @@ class Front:
     def _losses(self) -> None:
         self._heading("What this copy could not keep")
         for loss in self._made.losses:
-            times = str(loss.count) if loss.count > 1 else ""
-            self._line((loss.what, times, "", loss.note))
+            self._line((loss.what, loss.count if loss.count > 1 else "", "", loss.note))
         if not self._made.losses:
             self._text("Nothing was found that it could not keep.", BODY)
         if self._made.changes:
@@ -72,7 +72,7 @@ class Front:
         self._line(("level", "findings", "with a cell", "meaning"), STRONG)
         for level in levels.LEVELS:
             row = self._row
-            self._line((level, f"{counts[level]:,}", f"{cells[level]:,}", MEANINGS[level]))
+            self._line((level, counts[level], cells[level], MEANINGS[level]))
             self._sheet.cell(row, 1).fill = FILLS[level]
         for remark in _remarks(len(marks), marked, listing):
             self._text(remark, BODY)
@@ -88,7 +88,7 @@ class Front:
         for (level, rule, column), found in list(kinds.items())[:MOST_KINDS]:
             row, first = self._row, found[0]
             topic = f"{rule} ({column})" if column else rule
-            self._line((topic, f"{len(found):,}", first.cell, first.wrong))
+            self._line((topic, len(found), first.cell, first.wrong))
             self._sheet.cell(row, 1).fill = FILLS.get(level, FILLS[levels.WARN])
             if first.cell and link(self._made, self._sheet.cell(row, 3), first):
                 self._sheet.cell(row, 3).font = LINKED
@@ -106,15 +106,21 @@ class Front:
         put_text(cell, text)
         cell.font, cell.alignment = font, WRAPPED
         self._sheet.merge_cells(start_row=row, end_row=row, start_column=1, end_column=len(WIDTHS))
-        wide = sum(width for _, width in WIDTHS)
-        self._sheet.row_dimensions[row].height = height or 16 * (1 + int(len(text) / (wide * 0.95)))
+        fit_height(self._sheet, row, [(text, sum(width for _, width in WIDTHS))])
+        if height:
+            self._sheet.row_dimensions[row].height = height
         self._row += 1
 
     def _line(self, texts: Line, font: Any = BODY) -> None:
         for column, text in enumerate(texts, start=1):
             cell = self._sheet.cell(self._row, column)
-            put_text(cell, text)
+            if isinstance(text, int):
+                cell.value = text
+            else:
+                put_text(cell, text)
             cell.font, cell.alignment, cell.border = font, WRAPPED, RULE
+        widths = (width for _, width in WIDTHS)
+        fit_height(self._sheet, self._row, zip(map(str, texts), widths, strict=True))
         self._row += 1
 
 

@@ -17,6 +17,8 @@ from drystone.sheet.marked_copy.look import (
     RULE,
     STRONG,
     WRAPPED,
+    as_number,
+    fit_height,
     put_text,
 )
 from drystone.sheet.marked_copy.places import Mark
@@ -32,6 +34,7 @@ COLUMNS = (
     ("what is wrong", 64),
     ("what to do", 48),
 )
+_WIDTHS = tuple(wide for _, wide in COLUMNS)
 MOST_LISTED = 20_000  # lines; findings.csv has all. A sheet holds at most 65 530 links
 
 
@@ -73,8 +76,12 @@ def _line(made: Book, sheet: Any, row: int, mark: Mark, styles: dict[str, Any]) 
     for column, text in enumerate(texts, start=1):
         cell = sheet.cell(row, column)
         cell._style = copy(styles["body"])  # a shared style; setting each part anew takes seconds
-        if text:
+        number = as_number(text)
+        if number is not None:
+            cell.value = number
+        elif text:
             put_text(cell, text)
+    fit_height(sheet, row, zip(texts, _WIDTHS, strict=True))
     sheet.cell(row, 1)._style = copy(styles.get(mark.level, styles["body"]))
     cell = sheet.cell(row, 3)
     if link(made, cell, mark):
@@ -87,7 +94,7 @@ def _styles(sheet: Any) -> dict[str, Any]:
     """Styles of the lines by name, made once in a cell that is cleared again."""
     made: dict[str, Any] = {}
     cell = sheet.cell(2, 1)
-    cell.alignment = WRAPPED
+    cell.alignment, cell.border = WRAPPED, RULE
     for name, font in (("body", BODY), ("link", LINKED)):
         cell.font = font
         made[name] = copy(cell._style)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Iterable
 from copy import copy
 from typing import Any
 
@@ -31,9 +33,11 @@ HEADING = Font(name="Calibri", size=12, bold=True, color=INK)
 BODY = Font(name="Calibri", size=11, color=INK)
 STRONG = Font(name="Calibri", size=11, bold=True, color=INK)
 LINKED = Font(name="Calibri", size=11, color=LINK, underline="single")
-WRAPPED = Alignment(wrap_text=True, vertical="top")
+WRAPPED = Alignment(wrap_text=True, horizontal="left", vertical="top")
 RULE = Border(bottom=Side("thin", color="FFD8D4CA"))
 LONGEST = 32_000  # a cell holds 32 767 characters
+LINE_HEIGHT = 15.5  # points
+_NUMBER = re.compile(r"-?\d{1,15}(\.\d+)?")
 _FORMULA_LIKE = ("=", "+", "-", "@")
 
 
@@ -51,6 +55,30 @@ def put_text(cell: Any, text: str) -> None:
         cell.data_type = "s"
     if kept.startswith(_FORMULA_LIKE):
         cell.quotePrefix = True
+
+
+def as_number(text: str) -> int | float | None:
+    """Number of a text that a spreadsheet shows in the very same way; None for any other text."""
+    if not _NUMBER.fullmatch(text):
+        return None
+    number = float(text)
+    if number.is_integer() and str(int(number)) == text:
+        return int(number)
+    return number if repr(number) == text else None
+
+
+def fit_height(sheet: Any, row: int, texts: Iterable[tuple[str, float]]) -> None:
+    """Make a row tall enough for wrapped texts, each with the width of its column in characters.
+
+    Not every program does it by itself when it opens a file.
+    """
+    lines = max((_lines(text, wide) for text, wide in texts), default=1)
+    sheet.row_dimensions[row].height = LINE_HEIGHT * min(lines, 25)
+
+
+def _lines(text: str, wide: float) -> int:
+    room = max(wide * 0.92, 1)  # words that do not fit leave gaps
+    return sum(1 + int((len(part) - 1) / room) if part else 1 for part in text.split("\n"))
 
 
 def colour(cell: Any, level: str) -> None:

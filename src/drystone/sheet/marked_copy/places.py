@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import pandas as pd
@@ -59,7 +59,7 @@ def place_marks(
     filled = findings.fillna("").astype(str)
     order = {level: rank for rank, level in enumerate(levels.LEVELS)}
     marks = [
-        Mark(*record, finder.place(*record[2:6]))
+        replace(Mark(*record), place=finder.place(*record[2:6]))
         for record in filled[list(Mark.__slots__[:-1])].itertuples(index=False, name=None)
     ]
     return sorted(marks, key=lambda mark: order.get(mark.level, len(order)))

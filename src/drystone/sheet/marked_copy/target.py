@@ -27,7 +27,12 @@ def lock_files(path: Path) -> tuple[Path, ...]:
     return (path.with_name(f".~lock.{path.name}#"), path.with_name(f"~${path.name}"))
 
 
-def put(write: Callable[[Path], None], folder: Path, sheet: Path) -> Path:
+def is_lock(path: Path) -> bool:
+    """Whether a spreadsheet program keeps ``path`` beside an open workbook."""
+    return path.name.startswith((".~lock.", "~$"))
+
+
+def put(write: Callable[[Path], object], folder: Path, sheet: Path) -> Path:
     """Let ``write`` make the copy and move it into ``folder`` in one move.
 
     Earlier numbered copies go, unless they are open. A copy that is open keeps its content, and

@@ -1,0 +1,36 @@
+"""Mark: reads the sheet and its stored intake -> writes the marked copy of the sheet.
+
+A step of its own: it takes longer than the check itself on a large sheet, and nothing but the
+results folder waits for it.
+"""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+
+from drystone.sheet.marked_copy.write import write_marked_copy
+from drystone.stages.intake_store import load_columns, load_table
+
+
+def run(sheet: Path, intake: Path, target: Path) -> None:
+    """Write the marked copy of ``sheet`` to ``target`` in one move.
+
+    Parameters
+    ----------
+    sheet : workbook, CSV file or folder of CSV files; only read
+    intake : folder of the stored intake of this state of the sheet
+
+    Raises
+    ------
+    SheetProblem
+        When the sheet cannot be read any more.
+    """
+    target.parent.mkdir(parents=True, exist_ok=True)
+    partial = target.with_name(f".{target.name}.{os.getpid()}.part")
+    findings, rows = (load_table(intake, name) for name in ("findings", "rows"))
+    try:
+        write_marked_copy(sheet, findings, rows, load_columns(intake), partial)
+        os.replace(partial, target)
+    finally:
+        partial.unlink(missing_ok=True)
