@@ -57,5 +57,9 @@ def _mark(plan: Plan) -> str:
 
 def _count(plan: Plan) -> str:
     rows, ledger = plan.state.table("rows"), plan.state.table("ledger")
+    if rows.empty:
+        return (
+            f"The sheet has no rows yet; type your comparisons into {plan.review.settings.sheet}."
+        )
     usable = len(rows) - ledger["row_id"].nunique()
     return f"{len(rows)} rows: {usable} usable, {len(rows) - usable} in the ledger."

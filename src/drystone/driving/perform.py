@@ -93,9 +93,8 @@ def _slice(plan: Plan, step: Step) -> None:
 
     plan.state.ensure()
     settings = plan.review.settings
-    target, ledger = (plan.review.root / path for path in step.outputs)
     analysis = settings.all_analyses()[step.analysis]
-    run(plan.state.folder, analysis, settings.outcomes, target, ledger)
+    run(plan.state.folder, analysis, settings.outcomes, _folder(plan, step))
 
 
 def _effects(plan: Plan, step: Step) -> None:

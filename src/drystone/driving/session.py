@@ -24,23 +24,25 @@ class Display:
 
     def __init__(self) -> None:
         self._bar: Progress | None = None
-        self._total = 0
         self._task: Any = None
-        self._phrases: dict[str, str] = {}
 
-    def begin(self, plan: Plan) -> None:
-        """Show how much there is to do."""
-        self._total = len(plan.pending)
-        self._phrases = {name: item.step.phrase for name, item in plan.pending.items()}
-        if not self._total or not sys.stderr.isatty():
+    def open(self) -> None:
+        """Show that something happens: reading a large sheet takes seconds."""
+        if not sys.stderr.isatty():
             return
         from rich.console import Console
         from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn
 
         columns = (BarColumn(), MofNCompleteColumn(), TextColumn("{task.description}"))
         self._bar = Progress(*columns, console=Console(stderr=True), transient=True)
-        self._task = self._bar.add_task("starting", total=self._total)
+        self._task = self._bar.add_task("reading config and sheet", total=None)
         self._bar.start()
+
+    def begin(self, plan: Plan) -> None:
+        """Show how much there is to do."""
+        if self._bar is not None:
+            total = len(plan.pending)
+            self._bar.update(self._task, total=total, description="starting the steps")
 
     def watch(self, event: dict[str, Any]) -> None:
         """Show one event of the worker."""
@@ -70,6 +72,7 @@ def run_review(folder: Path, cores: int, strict: bool = False, tidy: bool = Fals
         display.begin(plan)
 
     try:
+        display.open()
         outcome = run(folder, cores, begin, display.watch)
     except StrictStop:
         _say_stops(seen[0])

@@ -102,7 +102,8 @@ def _write_tables(root: Path, settings: Settings, intake: Path, target: Path) ->
     write_csv(read_table(check / "findings.parquet"), target / FINDINGS)
     tables = target / "tables"
     write_csv(read_table(check / "findings.parquet"), tables / "findings.csv")
-    write_csv(read_table(check / "derivations.parquet"), tables / "derivations.csv")
+    derivations = collect.whole_derivations(root, settings, intake)
+    write_csv(derivations, tables / "derivations.csv")
     write_csv(collect.whole_ledger(root, settings, intake), tables / "ledger.csv")
     for name in settings.all_analyses():
         folder = collect.analysis_folder(root, name)

@@ -34,7 +34,7 @@ def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.R
         flow=shown.Flow(len(rows), int(rows["study"].nunique())),
         findings=load_table(intake, "findings"),
         ledger=collect.whole_ledger(root, settings, intake),
-        derivations=load_table(intake, "derivations"),
+        derivations=collect.whole_derivations(root, settings, intake),
         studies=load_table(intake, "studies"),
         analyses=tuple(
             analysis_facts(root, settings, intake, name, analysis)
