@@ -91,6 +91,7 @@ def _mark(
     list_findings(made, listing, marks)
     Front(made, front).write(sheet.name, marks, marked, listing.title)
     book.active = 0
+    front.sheet_view.tabSelected = True  # no other is: an edit would go into all selected sheets
     return book
 
 
