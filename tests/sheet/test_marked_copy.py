@@ -24,7 +24,7 @@ MESSY = {"calculated": calculated, "drawn": drawn, "tangled": tangled}
 def marked(path, **config):
     """Path of the marked copy; the original must not change by a byte."""
     before = hashlib.sha256(path.read_bytes()).hexdigest()
-    intake = take_in(read_sheet(path), settings(**config))
+    intake = take_in(read_sheet(path, config.get("columns")), settings(**config))
     target = path.with_name("copy.xlsx")
     write_marked_copy(path, intake.findings, intake.rows, intake.columns, target)
     assert hashlib.sha256(path.read_bytes()).hexdigest() == before

@@ -79,8 +79,11 @@ def _empty() -> Book:
 
 def _add(made: Book, name: str) -> Any:
     """Add a sheet under ``name``, or what of it can be the name of a sheet."""
-    title = _FORBIDDEN.sub("_", name).strip("'")[:LONGEST_TITLE] or "sheet"
-    sheet = made.book.create_sheet(title)
+    plain = _FORBIDDEN.sub("_", name).strip("'") or "sheet"
+    taken = {title.casefold() for title in made.book.sheetnames}
+    ends = ["", *(f" {number}" for number in range(2, len(taken) + 3))]
+    titles = (plain[: LONGEST_TITLE - len(end)] + end for end in ends)
+    sheet = made.book.create_sheet(next(t for t in titles if t.casefold() not in taken))
     made.titles[name] = sheet.title
     sheet.sheet_view.tabSelected = False
     return sheet

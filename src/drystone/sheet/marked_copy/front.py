@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 from typing import Any
 
 from drystone.sheet.marked_copy.keep_book import Book
-from drystone.sheet.marked_copy.listing import MOST_LISTED, link
+from drystone.sheet.marked_copy.listing import Listing, link
 from drystone.sheet.marked_copy.look import (
     BODY,
     FILLS,
@@ -21,7 +21,7 @@ from drystone.sheet.marked_copy.look import (
     fit_height,
     put_text,
 )
-from drystone.sheet.marked_copy.marks import MOST_NOTES, Marked
+from drystone.sheet.marked_copy.marks import Marked
 from drystone.sheet.marked_copy.places import Mark
 from drystone.words import levels
 
@@ -46,8 +46,8 @@ class Front:
         sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight = 1, 0
         sheet.sheet_properties.pageSetUpPr.fitToPage = True
 
-    def write(self, file: str, marks: Sequence[Mark], marked: Marked, listing: str) -> None:
-        """Write everything; ``listing`` is the name of the list of findings."""
+    def write(self, file: str, marks: Sequence[Mark], marked: Marked, listing: Listing) -> None:
+        """Write everything; ``listing`` is the list of findings."""
         self._text(f"{file}: marked copy", TITLE, 26)
         self._text(ADVICE, BODY)
         self._losses()
@@ -65,7 +65,7 @@ class Front:
             for change in self._made.changes:
                 self._text(f"{change[:1].upper()}{change[1:]}.", BODY)
 
-    def _legend(self, marks: Sequence[Mark], marked: Marked, listing: str) -> None:
+    def _legend(self, marks: Sequence[Mark], marked: Marked, listing: Listing) -> None:
         self._heading("What the colours mean")
         counts = Counter(mark.level for mark in marks)
         cells = Counter(mark.level for mark in marks if mark.place is not None)
@@ -124,22 +124,22 @@ class Front:
         self._row += 1
 
 
-def _remarks(total: int, marked: Marked, listing: str) -> Iterator[str]:
+def _remarks(total: int, marked: Marked, listing: Listing) -> Iterator[str]:
     yield (
         f"{marked.cells:,} cells are coloured, each by its gravest finding; its comment says what "
-        f"is wrong and what to do. The sheet '{listing}' lists the findings with links to the "
-        "cells. A finding about a whole row is shown at the row's name, one about a whole column "
+        f"is wrong and what to do. The sheet '{listing.title}' lists the findings with links to "
+        "the cells. A finding about a whole row is shown at the row's name, one about a whole column "
         "at its header."
     )
     if marked.hidden:
         yield f"{marked.hidden:,} of these cells stand in hidden rows, columns or sheets."
     if marked.unnoted:
         yield (
-            f"Only the first {MOST_NOTES:,} cells have a comment, since more make a workbook slow; "
-            "the others are coloured."
+            f"Only the first {marked.cells - marked.unnoted:,} cells have a comment, since more "
+            "make a workbook slow; the others are coloured."
         )
-    if total > MOST_LISTED:
+    if listing.left:
         yield (
-            f"The list holds the first {MOST_LISTED:,} of {total:,} findings; findings.csv has "
-            "them all."
+            f"The list holds the first {total - listing.left:,} of {total:,} findings; findings.csv "
+            "has them all."
         )

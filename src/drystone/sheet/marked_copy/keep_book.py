@@ -124,13 +124,16 @@ def _settle(made: Book) -> None:
     for sheet in list(book.chartsheets):
         book.remove(sheet)
     book.template = False
-    gone = _drop_outside_names(book.defined_names)
+    comments, gone = 0, _drop_outside_names(book.defined_names)
     for sheet in book.worksheets:
         gone += _drop_outside_names(sheet.defined_names)
         sheet.sheet_view.tabSelected = False
         for cell in list(sheet._cells.values()):
             if getattr(cell, "_comment", None) is not None:
                 _plain_comment(cell)
+                comments += 1
+    if comments:
+        made.changes.append("your own comments keep their words, not their type and size")
     if gone:
         made.losses.append(
             Loss("names that point to another workbook", gone, "the values in the cells are kept")

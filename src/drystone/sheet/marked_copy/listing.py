@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from copy import copy
+from dataclasses import dataclass
 from typing import Any
 
 from openpyxl.utils.cell import get_column_letter
@@ -38,8 +39,16 @@ _WIDTHS = tuple(wide for _, wide in COLUMNS)
 MOST_LISTED = 20_000  # lines; findings.csv has all. A sheet holds at most 65 530 links
 
 
-def list_findings(made: Book, sheet: Any, marks: Sequence[Mark]) -> int:
-    """Write the findings into ``sheet``; how many were left to findings.csv."""
+@dataclass(frozen=True)
+class Listing:
+    """Name of the sheet that lists the findings, and how many were left to findings.csv."""
+
+    title: str
+    left: int
+
+
+def list_findings(made: Book, sheet: Any, marks: Sequence[Mark]) -> Listing:
+    """Write the findings into ``sheet``, one line for each."""
     for number, (name, wide) in enumerate(COLUMNS, start=1):
         cell = sheet.cell(1, number, name)
         cell.font, cell.border, cell.alignment = STRONG, RULE, WRAPPED
@@ -54,7 +63,7 @@ def list_findings(made: Book, sheet: Any, marks: Sequence[Mark]) -> int:
     sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight = 1, 0
     sheet.sheet_properties.pageSetUpPr.fitToPage = True
     sheet.print_title_rows = "1:1"
-    return len(marks) - len(shown)
+    return Listing(sheet.title, len(marks) - len(shown))
 
 
 def link(made: Book, cell: Any, mark: Mark) -> bool:

@@ -62,8 +62,8 @@ def as_number(text: str) -> int | float | None:
     if not _NUMBER.fullmatch(text):
         return None
     number = float(text)
-    if number.is_integer() and str(int(number)) == text:
-        return int(number)
+    if number.is_integer():
+        return int(number) if str(int(number)) == text else None
     return number if repr(number) == text else None
 
 

@@ -88,8 +88,7 @@ def _mark(
     quote_formulas(made)
     if any(item.conditional_formatting for item in sheets.values()):
         made.changes.append("where a conditional format of yours colours a cell, it hides the mark")
-    list_findings(made, listing, marks)
-    Front(made, front).write(sheet.name, marks, marked, listing.title)
+    Front(made, front).write(sheet.name, marks, marked, list_findings(made, listing, marks))
     book.active = 0
     front.sheet_view.tabSelected = True  # no other is: an edit would go into all selected sheets
     return book
