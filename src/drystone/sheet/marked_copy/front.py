@@ -128,8 +128,8 @@ def _remarks(total: int, marked: Marked, listing: Listing) -> Iterator[str]:
     yield (
         f"{marked.cells:,} cells are coloured, each by its gravest finding; its comment says what "
         f"is wrong and what to do. The sheet '{listing.title}' lists the findings with links to "
-        "the cells. A finding about a whole row is shown at the row's name, one about a whole column "
-        "at its header."
+        "the cells. A finding about a whole row is shown at the row's name, one about a whole "
+        "column at its header."
     )
     if marked.hidden:
         yield f"{marked.hidden:,} of these cells stand in hidden rows, columns or sheets."
@@ -140,6 +140,6 @@ def _remarks(total: int, marked: Marked, listing: Listing) -> Iterator[str]:
         )
     if listing.left:
         yield (
-            f"The list holds the first {total - listing.left:,} of {total:,} findings; findings.csv "
-            "has them all."
+            f"The list holds the first {total - listing.left:,} of {total:,} findings; "
+            "findings.csv has them all."
         )
