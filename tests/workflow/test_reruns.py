@@ -307,7 +307,7 @@ def test_body_of_one_stage_reruns_it_and_what_follows(copied, review):
 
 def test_body_of_one_strategy_reruns_that_strategy(copied, review):
     path = copied / "src/drystone/stages/strategies/missing_cases.py"
-    path.write_text(path.read_text().replace("average=False", "average=bool(0)"))
+    path.write_text(path.read_text().replace("everywhere=False", "everywhere=bool(0)"))
     found = _run_copy(copied, review)
     expected = _strategies("yield", ("overall", "crop"), ("missing cases",))
     expected |= AFTER_FITS

@@ -5,7 +5,9 @@ from __future__ import annotations
 from collections.abc import Callable
 from pathlib import Path
 
+from drystone.driving.filters import idle_filters
 from drystone.driving.plan import Plan, make_plan
+from drystone.driving.session import shown_path
 from drystone.words.levels import STOP
 
 FINDINGS_FILE = Path("results") / "check" / "findings.csv"
@@ -26,10 +28,12 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     findings = plan.state.table("findings")
     for line in collapse(findings):
         say(str(line))
+    for note in idle_filters(plan):
+        say(note)
     say(_count(plan))
     target = plan.review.root / FINDINGS_FILE
     findings_csv(findings, target)
-    say(f"All findings with their cells: {target.relative_to(plan.review.root)}")
+    say(f"All findings with their cells: {shown_path(target)}")
     say(_mark(plan))
     plan.state.remember()
     return bool((findings["level"] == STOP).any())
@@ -49,7 +53,7 @@ def _mark(plan: Plan) -> str:
         root / FINDINGS_FILE.parent,
         sheet,
     )
-    said = f"Your sheet with the doubtful cells marked: {made.relative_to(root)}"
+    said = f"Your sheet with the doubtful cells marked: {shown_path(made)}"
     if made.name != copy_name(sheet):
         said += f" ({copy_name(sheet)} is open in another program, so it was left alone)"
     return said
@@ -61,5 +65,5 @@ def _count(plan: Plan) -> str:
         return (
             f"The sheet has no rows yet; type your comparisons into {plan.review.settings.sheet}."
         )
-    usable = len(rows) - ledger["row_id"].nunique()
+    usable = len(rows) - len(ledger.drop_duplicates(["sheet", "sheet_row"]))
     return f"{len(rows)} rows: {usable} usable, {len(rows) - usable} in the ledger."

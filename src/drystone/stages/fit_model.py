@@ -5,6 +5,7 @@ A model that cannot be fitted is a result too: one row with the reason, and ever
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
@@ -42,6 +43,7 @@ if TYPE_CHECKING:
     from drystone.settings.model import Inference as InferenceSettings
 
 FEWEST_DF = 4.0
+ROW_NUMBERS = re.compile(r"\b([Rr]ows?) (\d+(?:(?:, | and )\d+)*)")
 Measure = TypeVar("Measure")
 
 
@@ -67,7 +69,11 @@ def run(
     sampling = read_table(sampling_folder / "sampling.parquet")
     covariance = read_table(sampling_folder / "covariance.parquet")
     rows = sampling.merge(_moderators(slice_path, sampling), on="row_id", how="left")
-    results = fit_rows(rows, covariance, formula, analysis, inference)
+    if rows.empty:
+        why = _why_empty(read_table(sampling_folder / "ledger.parquet"))
+        results = _refused(why, rows, _no_ledger())
+    else:
+        results = fit_rows(rows, covariance, formula, analysis, inference)
     write_table(results.coefficients, target / "coefficients.parquet", COEFFICIENTS)
     write_table(results.components, target / "components.parquet", COMPONENTS)
     write_table(results.heterogeneity, target / "heterogeneity.parquet", HETEROGENEITY)
@@ -169,7 +175,7 @@ def _warnings(fitted: Fit, main: Inference) -> list[str]:
     few = float(np.min(main.degrees_of_freedom))
     if few < FEWEST_DF:
         found.append(
-            f"Too few studies for a firm interval: {few:.1f} degrees of freedom; below 4 the "
+            f"Too few studies for a firm interval: {few:.2f} degrees of freedom; below 4 the "
             "interval and the p value are rough."
         )
     for name in fitted.components:
@@ -213,6 +219,12 @@ def _or_none(measure: Callable[..., Measure], *given: Prepared | Fit) -> Measure
         return None
 
 
+def _why_empty(ledger: pd.DataFrame) -> str:
+    """Why a strategy has no row: the ledger's reason when it is one for all."""
+    reasons = ledger["reason"].unique()
+    return str(reasons[0]) if len(reasons) == 1 else "no row is left under this strategy"
+
+
 def _refused(reason: str, rows: pd.DataFrame, ledger: pd.DataFrame) -> Results:
     row = dict.fromkeys(COEFFICIENTS.columns, np.nan) | {
         "coefficient": OVERALL,
@@ -225,12 +237,16 @@ def _refused(reason: str, rows: pd.DataFrame, ledger: pd.DataFrame) -> Results:
 
 
 def _with_ids(refusal: Refusal, rows: pd.DataFrame) -> str:
-    """Sentence of the refusal with row numbers turned into the review's own row ids."""
-    numbers = refusal.facts.get("rows")
-    if not isinstance(numbers, list | tuple) or not all(isinstance(n, int) for n in numbers):
+    """Sentence of the refusal with the engine's row numbers turned into the review's row ids."""
+    if "rows" not in refusal.facts:
         return refusal.sentence
-    names = [str(rows["row_id"].iloc[number]) for number in numbers[:4] if number < len(rows)]
-    return f"{refusal.sentence} Rows in the sheet: {', '.join(names)}."
+
+    def named(match: re.Match[str]) -> str:
+        numbers = [int(number) for number in re.findall(r"\d+", match[2])]
+        ids = [str(rows["row_id"].iloc[number]) for number in numbers if number < len(rows)]
+        return f"{match[1]} {', '.join(ids)}"
+
+    return ROW_NUMBERS.sub(named, refusal.sentence)
 
 
 def _moderators(slice_path: Path, sampling: pd.DataFrame) -> pd.DataFrame:

@@ -6,11 +6,11 @@ results folder waits for it.
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 
 from drystone.sheet.marked_copy.write import write_marked_copy
 from drystone.stages.intake_store import load_columns, load_table
+from drystone.tables.atomic import replacing
 
 
 def run(sheet: Path, intake: Path, target: Path) -> None:
@@ -26,11 +26,6 @@ def run(sheet: Path, intake: Path, target: Path) -> None:
     SheetProblem
         When the sheet cannot be read any more.
     """
-    target.parent.mkdir(parents=True, exist_ok=True)
-    partial = target.with_name(f".{target.name}.{os.getpid()}.part")
     findings, rows = (load_table(intake, name) for name in ("findings", "rows"))
-    try:
+    with replacing(target) as partial:
         write_marked_copy(sheet, findings, rows, load_columns(intake), partial)
-        os.replace(partial, target)
-    finally:
-        partial.unlink(missing_ok=True)

@@ -28,11 +28,13 @@ if TYPE_CHECKING:
 def run(intake: Path, analysis: Analysis, outcomes: dict[str, Outcome], target: Path) -> None:
     """Write slice, ledger and derivations to the folder ``target``.
 
-    The ledger holds the rows that the filters leave out, the derivations every borrowed SD.
+    The ledger holds the rows that the filters leave out and those that repeat a comparison, the
+    derivations every borrowed SD.
     """
     rows = usable_rows(load_table(intake, "rows"), load_table(intake, "ledger"), analysis)
-    kept, left = apply_filters(rows, analysis)
-    table = settle_arms(kept)
+    kept, filtered = apply_filters(rows, analysis)
+    table, repeated = without_repeats(settle_arms(kept))
+    left = conform(pd.concat([filtered, repeated], ignore_index=True), LEDGER)
     table["flip"] = table["outcome"].map({name: item.flip_sign for name, item in outcomes.items()})
     table["flip"] = table["flip"].astype(bool)
     extra = [name for name in extra_columns(analysis) if name not in SLICE_COLUMNS]
@@ -46,10 +48,10 @@ def apply_filters(rows: pd.DataFrame, analysis: Analysis) -> tuple[pd.DataFrame,
     """Split ``rows`` into those that pass the equality filters and ledger entries of the rest."""
     reasons = pd.Series("", index=rows.index, dtype=object)
     for column, allowed in analysis.where.items():
-        out = ~_as_text(rows[column]).isin(allowed) & (reasons == "")
+        out = ~as_text(rows[column]).isin(allowed) & (reasons == "")
         reasons[out] = f"{column} is not {_either(allowed)}"
     for column, refused in analysis.where_not.items():
-        out = _as_text(rows[column]).isin(refused) & (reasons == "")
+        out = as_text(rows[column]).isin(refused) & (reasons == "")
         reasons[out] = f"{column} is {_either(refused)}"
     out = reasons != ""
     left = ledger_rows(rows[out], "filtered out", reasons[out])
@@ -72,6 +74,21 @@ def settle_arms(rows: pd.DataFrame) -> pd.DataFrame:
         table[f"{role}_sd_source"] = part["source"]
         table[f"{role}_sd_pooled"] = part["pooled"].astype(bool)
     return table
+
+
+def without_repeats(table: pd.DataFrame) -> tuple[pd.DataFrame, pd.DataFrame]:
+    """Split into the first row of every pair of arms and ledger entries of its repeats.
+
+    Two rows with the same two physical arms are one comparison, also when it is turned round.
+    Together they would make the sampling covariance singular and drive the row variance to zero.
+    """
+    sides = zip(table["control_arm"], table["treatment_arm"], strict=True)
+    pairs = pd.Series(["\n".join(sorted(pair)) for pair in sides], index=table.index, dtype=object)
+    again = pairs.duplicated()
+    first = table["row_id"].groupby(pairs).transform("first")
+    reasons = "row " + first[again].astype(object) + " has the same two arms"
+    left = ledger_rows(table[again], "same comparison twice", reasons)
+    return table[~again].reset_index(drop=True), left
 
 
 def borrowed_sds(table: pd.DataFrame) -> pd.DataFrame:
@@ -152,7 +169,8 @@ def _with_extra(extra: list[str]) -> pa.DataFrameSchema:
     return SLICE.add_columns({name: pa.Column(None, nullable=True) for name in extra})
 
 
-def _as_text(column: pd.Series) -> pd.Series:
+def as_text(column: pd.Series) -> pd.Series:
+    """Values as a filter of the config names them: numbers without idle zeros, blank as ''."""
     if pd.api.types.is_numeric_dtype(column.dtype):
         return column.map(lambda value: "" if pd.isna(value) else f"{value:g}")
     return column.astype(object).where(column.notna(), "")

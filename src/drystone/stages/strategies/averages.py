@@ -16,7 +16,13 @@ import numpy as np
 import pandas as pd
 
 from drystone.maths import average_variation as variation
-from drystone.stages.strategies.filled import NothingReported
+from drystone.stages.strategies.filled import (
+    Filled,
+    NothingReported,
+    no_ledger,
+    only_complete,
+    with_cv2,
+)
 from drystone.tables.effects import AVERAGES
 from drystone.tables.store import conform
 from drystone.words import strategies
@@ -73,6 +79,20 @@ def average_cv(rows: pd.DataFrame, strategy: Strategy) -> Averages:
             values[outcome, arm] = float(used.iloc[0])
     table = conform(pd.concat(shown.values(), ignore_index=True), AVERAGES)
     return Averages(values, table, arm_roles(rows))
+
+
+def plug_in(rows: pd.DataFrame, strategy: Strategy, everywhere: bool) -> Filled:
+    """Rows with the average squared CV where an arm reports no SD, or everywhere.
+
+    Raises
+    ------
+    NothingReported
+        When no arm of the slice reports an SD.
+    """
+    averages = average_cv(rows, strategy)
+    few = strategy.rows == strategies.COMPLETE_ROWS
+    kept, left = only_complete(rows) if few else (rows, no_ledger())
+    return Filled(with_cv2(kept, averages.by_row(kept), everywhere), left, averages.table)
 
 
 def arm_roles(rows: pd.DataFrame) -> dict[str, str]:
