@@ -53,7 +53,7 @@ def start(folder: Path) -> None:
 @cli.command()
 @click.argument("folder", type=FOLDER, default=Path())
 def check(folder: Path) -> None:
-    """Read the sheet of the review in FOLDER, list what is wrong with it, write findings.csv."""
+    """Read the sheet of the review in FOLDER, list what is wrong, mark it in a copy."""
     from drystone.driving.checking import check_review
 
     stops = check_review(folder, click.echo)

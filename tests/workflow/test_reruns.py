@@ -102,7 +102,7 @@ def _strategies(name: str, models: tuple[str, ...], of: tuple[str, ...]) -> set[
 
 
 YIELD = _chain("yield", ("overall", "crop"))
-PAGE = {"check", "report", "publish"}
+PAGE = {"check", "mark", "report", "publish"}
 AFTER_FITS = {"compare/yield", "figures/yield", "report", "publish"}
 
 
@@ -113,7 +113,7 @@ def _add_row(rows: pd.DataFrame) -> pd.DataFrame:
 
 
 DATA_EDITS = {
-    "a note": (_set("R04", "note", "read again {}"), {"check", "publish"}),
+    "a note": (_set("R04", "note", "read again {}"), {"check", "mark", "publish"}),
     "rows in another order": (lambda rows: rows.iloc[::-1], PAGE),
     "19 becomes 19.000": (_set("R02", "control_n", "{}6.000"), set()),
     "one cell of one outcome": (_set("R02", "control_mean", "1{}.5"), PAGE | YIELD),

@@ -1,4 +1,4 @@
-"""What ``drystone check`` does: reads the sheet, prints the findings, writes them as CSV."""
+"""What ``drystone check`` does: prints the findings, writes them as CSV, marks a copy."""
 
 from __future__ import annotations
 
@@ -34,8 +34,29 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     target = plan.review.root / FINDINGS_FILE
     findings_csv(findings, target)
     say(f"All findings with their cells: {shown_path(target)}")
+    say(_mark(plan))
     plan.state.remember()
     return bool((findings["level"] == STOP).any())
+
+
+def _mark(plan: Plan) -> str:
+    """Write the marked copy; say where it is."""
+    from drystone.sheet.marked_copy.target import copy_name, put
+    from drystone.sheet.marked_copy.write import write_marked_copy
+    from drystone.stages.intake_store import load_columns
+
+    sheet, root = plan.review.sheet_path(), plan.review.root
+    findings, rows = plan.state.table("findings"), plan.state.table("rows")
+    columns = load_columns(plan.state.folder)
+    made = put(
+        lambda path: write_marked_copy(sheet, findings, rows, columns, path),
+        root / FINDINGS_FILE.parent,
+        sheet,
+    )
+    said = f"Your sheet with the doubtful cells marked: {shown_path(made)}"
+    if made.name != copy_name(sheet):
+        said += f" ({copy_name(sheet)} is open in another program, so it was left alone)"
+    return said
 
 
 def _count(plan: Plan) -> str:

@@ -84,6 +84,13 @@ def _check(plan: Plan, step: Step) -> None:
     run(plan.state.folder, plan.review.cache / "check")
 
 
+def _mark(plan: Plan, step: Step) -> None:
+    from drystone.stages.mark_sheet import run
+
+    plan.state.ensure()
+    run(plan.review.sheet_path(), plan.state.folder, plan.review.root / step.outputs[0])
+
+
 def _slice(plan: Plan, step: Step) -> None:
     from drystone.stages.slice_rows import run
 
@@ -182,6 +189,7 @@ def _folder(plan: Plan, step: Step) -> Path:
 
 STAGES: dict[str, Stage] = {
     "check_sheet": _check,
+    "mark_sheet": _mark,
     "slice_rows": _slice,
     "compute_effects": _effects,
     "fill_spreads": _sampling,

@@ -9,6 +9,7 @@ from typing import Any
 from drystone.settings.model import Analysis, Settings, Strategy
 
 ANALYSES = "cache/analyses"
+MARKED = "cache/check/marked.xlsx"
 
 
 @dataclass(frozen=True)
@@ -62,6 +63,14 @@ def _steps(settings: Settings) -> Iterator[Step]:
         modules=("drystone.stages.check_sheet",),
         rows="check",
     )
+    yield Step(
+        "mark",
+        "mark_sheet",
+        "marked copy of the sheet",
+        (MARKED,),
+        modules=("drystone.stages.mark_sheet",),
+        rows="check",
+    )
     made: list[str] = []
     drawn: list[str] = []
     for name, analysis in settings.all_analyses().items():
@@ -86,7 +95,7 @@ def _steps(settings: Settings) -> Iterator[Step]:
         "publish_results",
         "results folder",
         ("cache/published.json",),
-        upstream=("check", "report", *drawn),
+        upstream=("check", "mark", "report", *drawn),
         modules=("drystone.stages.publish_results",),
     )
 

@@ -16,6 +16,7 @@ import numpy as np
 import pandas as pd
 
 from drystone.maths.log_ratio import percent_change
+from drystone.sheet.marked_copy.target import lock_files, open_copies, put
 from drystone.stages import collect
 from drystone.stages.draw_figures import figures_folder
 from drystone.stages.swap_folders import NEW, clear, recover, swap
@@ -47,6 +48,7 @@ def run(root: Path, settings: Settings, intake: Path, run_id: str, inputs: dict[
     new.mkdir()
     write_csv(summary_table(root, settings), new / "summary.csv")
     _write_tables(root, settings, intake, new)
+    _put_marked_copy(root, settings, new / FINDINGS.parent)
     shutil.copyfile(root / "cache" / "report" / "report.html", new / "report.html")
     for name in settings.all_analyses():
         left_out = shutil.ignore_patterns("list.json")
@@ -57,6 +59,19 @@ def run(root: Path, settings: Settings, intake: Path, run_id: str, inputs: dict[
     swap(root)
     stamp = root / "cache" / "published.json"
     stamp.write_text(json.dumps({"run": run_id}), encoding="utf-8")
+
+
+def _put_marked_copy(root: Path, settings: Settings, target: Path) -> None:
+    """Publish the marked copy, beside an older one that is open in a spreadsheet program.
+
+    The open one and the file that says so come along, since the program will save to that place.
+    """
+    sheet, made = root / settings.sheet, root / "cache" / "check" / "marked.xlsx"
+    for copy in open_copies(root / "results" / target.name, sheet):
+        for path in (copy, *lock_files(copy)):
+            if path.exists():
+                shutil.copyfile(path, target / path.name)
+    put(lambda partial: shutil.copyfile(made, partial), target, sheet)
 
 
 def summary_table(root: Path, settings: Settings) -> pd.DataFrame:
