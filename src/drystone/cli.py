@@ -37,25 +37,47 @@ def demo(folder: Path, cores: int) -> None:
 
 @cli.command()
 @click.argument("folder", type=FOLDER)
-def start(folder: Path) -> None:
-    """Write an empty review into FOLDER: config, workbook, and what plain snakemake needs."""
+@click.option("--sheet", type=FOLDER, help="The team's own sheet: copied, its layout guessed.")
+def start(folder: Path, sheet: Path | None) -> None:
+    """Write a review into FOLDER: config, workbook, and what plain snakemake needs.
+
+    With --sheet, the config is a proposal: every guess a line with its reason, easy to correct.
+    """
     from drystone.driving import folders
 
-    folders.start(folder)
+    config = folder / "config" / "config.yaml"
+    if sheet is None:
+        folders.start(folder)
+        steps = [f"name your outcomes in {config}"]
+        steps.append(f"type your comparisons into {folder / 'data' / 'extraction.xlsx'}")
+    else:
+        from drystone.driving.own_layout import start_with_sheet
+
+        steps = [f"decide: {ask}" for ask in start_with_sheet(folder, sheet).asks]
+        steps.append(f"read the guesses in {config} and correct them")
     click.echo(f"A review folder stands in {folder}. Now:")
-    click.echo(f"  1. name your outcomes in {folder / 'config' / 'config.yaml'}")
-    click.echo(f"  2. type your comparisons into {folder / 'data' / 'extraction.xlsx'}")
-    click.echo(f"  3. drystone check {folder}")
-    click.echo(f"  4. drystone run {folder}")
+    for number, step in enumerate([*steps, f"drystone check {folder}", f"drystone run {folder}"]):
+        click.echo(f"  {number + 1}. {step}")
 
 
 @cli.command()
 @click.argument("folder", type=FOLDER, default=Path())
 def check(folder: Path) -> None:
-    """Read the sheet of the review in FOLDER, list what is wrong with it, write findings.csv."""
-    from drystone.driving.checking import check_review
+    """List what is wrong with the sheet of the review in FOLDER, and write findings.csv.
 
-    stops = check_review(folder, click.echo)
+    FOLDER may also be a sheet in the team's own layout (a workbook, a CSV file, or a folder of
+    CSV files): then columns, outcomes and units are guessed and shown, and no config is needed.
+    """
+    from drystone.driving.folders import is_bare_sheet
+
+    if is_bare_sheet(folder):
+        from drystone.driving.own_layout import check_sheet
+
+        stops = check_sheet(folder, click.echo)
+    else:
+        from drystone.driving.checking import check_review
+
+        stops = check_review(folder, click.echo)
     sys.exit(STOPS if stops else 0)
 
 

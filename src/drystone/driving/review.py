@@ -49,7 +49,8 @@ class Review:
         path = self.sheet_path()
         if path.is_file():
             return [path.relative_to(self.root)] if path.is_relative_to(self.root) else [path]
-        files = [path / name for name in ("comparisons.csv", "studies.csv")]
+        named = self.settings.layout.sheet or "comparisons.csv"
+        files = [path / name for name in dict.fromkeys((named, "studies.csv"))]
         return [
             file.relative_to(self.root) if file.is_relative_to(self.root) else file
             for file in files

@@ -104,7 +104,8 @@ class SheetState:
         from drystone.stages.intake_store import save_intake
 
         settings = self.review.settings
-        intake = take_in(read_sheet(self.review.sheet_path(), settings.columns), settings)
+        raw = read_sheet(self.review.sheet_path(), settings.columns, settings.layout)
+        intake = take_in(raw, settings)
         self.folder.parent.mkdir(parents=True, exist_ok=True)
         save_intake(intake, self.folder)
 
@@ -161,7 +162,7 @@ class SheetState:
 def sheet_state(review: Review, code: CodeIndex) -> SheetState:
     """State of the review's sheet as it is on disk now; nothing is read but the file's bytes."""
     options = review.settings.model_dump(
-        include={"columns", "defaults", "outcomes", "missing_n", "zero_sd"}
+        include={"columns", "layout", "defaults", "outcomes", "missing_n", "zero_sd"}
     )
     reading = {"options": options, "path": review.settings.sheet}
     parts = [_file_digest(review.root / path) for path in review.sheet_files()]
