@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import sys
 from pathlib import Path
 
@@ -115,6 +116,9 @@ def _run(folder: Path, cores: int, strict: bool = False, tidy: bool = False) -> 
 
 def main() -> None:
     """Run the command line; every problem that a user can cause ends in a sentence."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")  # a name never breaks the last line
     try:
         cli(standalone_mode=False)
     except click.exceptions.Exit as ended:

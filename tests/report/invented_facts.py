@@ -254,7 +254,9 @@ def _model(name, formula, sampling, item, *, refuse) -> ModelFacts:
     mean = float((weights * sampling["effect"]).sum() / weights.sum())
     count = sampling["study"].nunique()
     se = 0.25 / np.sqrt(count) * (1.15 if item.use == "complete cases" else 1.0)
-    names = ["overall"] if formula == "~ 1" else ["Intercept", "path: gravel", "path: sand", "age"]
+    names = (
+        ["overall"] if formula == "~ 1" else ["intercept", "path = gravel", "path = sand", "age"]
+    )
     rows = [
         _coefficient(word, mean * 0.6**i, se * 0.9**i, sampling, count)
         for i, word in enumerate(names)
@@ -343,9 +345,9 @@ def _side_by_side(settings: Settings, made: tuple[StrategyFacts, ...]) -> pd.Dat
                     copied
                     | {
                         "strategy": strategy.name,
-                        "row_set": "complete"
-                        if strategy.settings.use == "complete cases"
-                        else strategy.settings.rows,
+                        "row_set": "rows with both SDs"
+                        if "complete" in (strategy.settings.use[:8], strategy.settings.rows)
+                        else "all usable rows",
                         "model": model.name,
                         "sign": sign,
                         "excludes_zero": None if refused else "yes" if apart else "no",

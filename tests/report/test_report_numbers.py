@@ -82,6 +82,25 @@ def test_number_keeps_three_digits(value: float, text: str) -> None:
     assert plain(numbers.number(value)) == text
 
 
+@pytest.mark.parametrize(
+    ("value", "text"),
+    [(0.996, "> 99 %"), (0.99999, "> 99 %"), (0.994, "99 %"), (1.0, "100 %"), (0.0, "0 %"),
+     (0.0001, "< 0.1 %"), (0.0008, "0.1 %"), (0.0994, "9.9 %"), (0.0999, "10 %")],
+)  # fmt: skip
+def test_only_all_prints_as_all_and_nothing_as_nothing(value: float, text: str) -> None:
+    assert plain(numbers.share(value)) == text
+
+
+def test_numbers_without_end_are_words() -> None:
+    assert numbers.number(math.inf) == "infinite"
+    assert plain(numbers.number(-math.inf)) == "-infinite"
+
+
+def test_a_number_below_a_limit_never_prints_as_the_limit() -> None:
+    assert numbers.below(3.98, 4.0) == "3.98"
+    assert numbers.below(3.99987, 4.0) == "3.9999"
+
+
 def test_small_words() -> None:
     assert plain(numbers.count(1, "study", "studies")) == "1 study"
     assert plain(numbers.count(1200, "row")) == "1 200 rows"

@@ -1,4 +1,4 @@
-"""Counts, scale, study summaries and warnings behind the page."""
+"""Counts, scale, study summaries and pictures behind the page."""
 
 from __future__ import annotations
 
@@ -9,14 +9,12 @@ import numpy as np
 import pandas as pd
 import pytest
 from report.invented_facts import invented_facts
-from test_report_numbers import plain
 
-from drystone.report import cautions, flow
-from drystone.report.facts import MadeFrom, main_model, main_strategy
+from drystone.report import flow
+from drystone.report.facts import main_model, main_strategy
 from drystone.report.gaps import gap_counts, gap_studies
 from drystone.report.ladder import build_ladder
 from drystone.report.links import Links
-from drystone.report.methods import methods, references
 from drystone.report.scale import RatioScale, ratio_scale
 from drystone.report.spread import spread_pictures
 from drystone.report.study_summary import summarise_studies
@@ -125,56 +123,3 @@ def test_lines_of_equal_cv_pass_through_their_points() -> None:
         above = point.y < line.y1 + slope * (point.x - line.x1)
         if abs(point.sd / point.mean - 0.3) > 0.01:
             assert above == (point.sd / point.mean > 0.3)
-
-
-def test_warnings_that_must_not_be_missed() -> None:
-    facts = invented_facts(12)
-    text = plain(" ".join(cautions.analysis_cautions(facts, facts.analyses[0])))
-    assert "Model 'path and age' was refused under complete cases" in text
-    assert "One arm owns 31 % of the average CV" in text
-    assert "complete cases would drop them" in text
-    assert "Too few studies" in text
-    assert "12 arms" not in text
-
-
-def test_enough_studies_bring_no_warning() -> None:
-    facts = invented_facts(130)
-    assert "Too few studies" not in " ".join(cautions.analysis_cautions(facts, facts.analyses[0]))
-
-
-def test_few_reporting_arms_do_not_dominate() -> None:
-    facts = invented_facts(130)
-    analysis = facts.analyses[0]
-    fewer = tuple(
-        replace(strategy, averages=strategy.averages.assign(reporting_arms=9))
-        for strategy in analysis.strategies
-    )
-    found = cautions.analysis_cautions(facts, replace(analysis, strategies=fewer))
-    assert not any("owns" in text for text in found)
-
-
-def test_heavy_second_order_term_is_named() -> None:
-    facts = invented_facts(12)
-    analysis = facts.analyses[0]
-    effects = analysis.effects.assign(second_order_share=0.1)
-    effects.loc[3, "second_order_share"] = 0.3
-    found = cautions.analysis_cautions(facts, replace(analysis, effects=effects))
-    [text] = [text for text in found if "second-order" in text]
-    assert "beetles-0004" in text
-    assert "1 row" in plain(text)
-
-
-def test_methods_follow_the_settings() -> None:
-    facts = invented_facts(12)
-    text = " ".join(piece.text for piece in methods(facts))
-    for part in ("second-order", "first order", "restricted maximum", "per physical arm", "CR2"):
-        assert part in text
-    assert sum(piece.person for piece in methods(facts)) == 5
-    assert any("2015" in entry for entry in references(facts))
-    first_only = replace(facts, analyses=facts.analyses[1:])
-    assert not any("Ecology 96" in entry for entry in references(first_only))
-
-
-def test_versions_stand_in_the_methods() -> None:
-    facts = replace(invented_facts(12), made_from=MadeFrom("r", {"Thing": "9.9"}))
-    assert any("Thing 9.9" in piece.text for piece in methods(facts))

@@ -123,3 +123,14 @@ def test_singular_sampling_covariance_fits_with_blank_heterogeneity():
     assert np.isfinite(results.coefficients["estimate"].iloc[0])
     assert np.isnan(results.heterogeneity["q"].iloc[0])
     assert results.components["i2"].isna().all()
+
+
+def test_refusal_names_rows_by_their_ids():
+    """Rows 0 and 1 of the engine are r0 and r1 of the sheet."""
+    rows = _rows(4, 2).assign(effect=0.3, sampling_variance=0.02, study=["A", "A", "B", "B"])
+    pairs = pd.DataFrame(
+        {"row_id": ["r0", "r2"], "other_row_id": ["r1", "r3"], "covariance": [0.02, 0.02]}
+    )
+    refused = fit_rows(rows, pairs, "~ 1", ANALYSIS, Inference()).coefficients["refused"].iloc[0]
+    assert "r0" in refused
+    assert "Rows 0" not in refused

@@ -6,7 +6,7 @@ import numpy as np
 import pandas as pd
 
 from drystone.settings.model import Analysis
-from drystone.stages.slice_rows import apply_filters, settle_arms
+from drystone.stages.slice_rows import apply_filters, borrowed_sds, settle_arms, without_repeats
 
 
 def _rows(**columns) -> pd.DataFrame:
@@ -34,6 +34,28 @@ def test_blank_sd_is_read_from_another_row_of_the_same_arm():
     assert table["control_sd"].tolist() == [2.0, 2.0]
     assert table["control_sd_source"].tolist() == ["other row", "own"]
     assert table["control_arm"].nunique() == 1
+
+
+def test_borrowed_sd_has_a_derivation_that_names_the_row():
+    table = borrowed_sds(settle_arms(_rows(control_sd_value=[np.nan, 2.0])))
+    (found,) = table.to_dict("records")
+    assert (found["row_id"], found["arm"], found["sd"]) == ("r0", "control", 2.0)
+    assert found["rule"] == "read from another row"
+    assert found["inputs"] == "SD 2 of row r1"
+
+
+def test_repeated_comparison_leaves_also_when_turned_round():
+    rows = _rows(
+        control_id=["a", "a", "b", "a"],
+        treatment_id=["b", "b", "a", "c"],
+        control_mean=[10.0, 10.0, 12.0, 10.0],
+        treatment_mean=[12.0, 12.0, 10.0, 15.0],
+    )
+    kept, left = without_repeats(settle_arms(rows))
+    assert kept["row_id"].tolist() == ["r0", "r3"]
+    assert left["row_id"].tolist() == ["r1", "r2"]
+    assert set(left["reason"]) == {"row r0 has the same two arms"}
+    assert set(left["rule"]) == {"same comparison twice"}
 
 
 def test_one_id_with_unlike_numbers_is_several_arms():

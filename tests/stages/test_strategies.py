@@ -128,6 +128,41 @@ def test_pooled_sds_stay_out_of_averages_by_arm():
     assert table[table["used"]]["reporting_arms"].tolist() == [11, 11]
 
 
+def _chain(has: tuple[bool, ...], seed: int = 3) -> pd.DataFrame:
+    """Rows t1 against c, t2 against t1, t3 against t1 ...: t1 is treatment once, control often."""
+    rows = _slice([("c", True)] + [("t1", has_sd) for has_sd in has], seed=seed)
+    raw = rows.drop(columns=[name for name in rows if name.endswith(("_arm", "_source"))])
+    raw["treatment_id"] = [f"t{number + 1}" for number in range(len(rows))]
+    raw.loc[1:, "control_mean"] = raw.loc[0, "treatment_mean"]
+    raw.loc[1:, "control_n"] = raw.loc[0, "treatment_n"]
+    raw["control_sd_value"] = raw["control_sd"].where(raw.index == 0)
+    raw["treatment_sd_value"] = raw["treatment_sd"].where(np.r_[False, np.array(has)])
+    raw["sd_pooled"] = False
+    keep = [name for name in raw if not name.endswith(("_sd", "_sd_pooled"))]
+    return settle_arms(raw[keep]).assign(flip=False)
+
+
+@pytest.mark.parametrize("use", ["missing cases", "all cases"])
+def test_arm_in_both_roles_has_one_cv(use):
+    """A chain: t1 heads other rows as their control. By role it would get two CVs, and V could
+    become indefinite."""
+    rows = _chain((True,) * 11 + (False,) * 3)
+    filled = _fill(rows, use)
+    first = filled.rows.loc[0, "treatment_cv2"]
+    assert rows["control_arm"].iloc[1] == rows["treatment_arm"].iloc[0]
+    np.testing.assert_array_equal(filled.rows.loc[1:, "control_cv2"], first)
+    assert _smallest_eigenvalue(filled.rows, ANALYSIS) > 0
+
+
+def _smallest_eigenvalue(rows: pd.DataFrame, analysis: Analysis) -> float:
+    table = sampling_table(rows, analysis)
+    place = {row: number for number, row in enumerate(table["row_id"])}
+    dense = np.diag(table["sampling_variance"].to_numpy())
+    for first, second, value in covariance_table(rows, analysis).itertuples(index=False):
+        dense[place[first], place[second]] = dense[place[second], place[first]] = value
+    return float(np.linalg.eigvalsh(dense).min())
+
+
 @settings(max_examples=60, deadline=None)
 @given(
     st.lists(st.tuples(st.sampled_from("abcd"), st.booleans()), min_size=2, max_size=14),
@@ -146,12 +181,7 @@ def test_covariance_is_positive_definite_and_rows_balance(controls, use, order, 
     if filled.rows.empty:
         return
     analysis = Analysis(outcome=("cover",), order=order)
-    table = sampling_table(filled.rows, analysis)
-    place = {row: number for number, row in enumerate(table["row_id"])}
-    dense = np.diag(table["sampling_variance"].to_numpy())
-    for first, second, value in covariance_table(filled.rows, analysis).itertuples(index=False):
-        dense[place[first], place[second]] = dense[place[second], place[first]] = value
-    assert np.linalg.eigvalsh(dense).min() > 0
+    assert _smallest_eigenvalue(filled.rows, analysis) > 0
 
 
 def test_flipped_outcome_turns_effects_and_keeps_variances():

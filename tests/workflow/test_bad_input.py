@@ -89,7 +89,7 @@ CONFIG_FAULTS = {
     ),
     "key twice": (_config("sheet: a\nsheet: b"), "lines 1 and 2"),
     "unknown key": (_settings(strategys=["all cases"]), "did you mean 'strategies'?"),
-    "unknown strategy": (_settings(strategies=["impute"]), "strategies: 0: use"),
+    "unknown strategy": (_settings(strategies=["impute"]), "strategies: item 1: use"),
     "sheet absent": (_settings(sheet="data/none.xlsx"), "'none.xlsx' does not exist"),
     "sheet of another kind": (
         lambda r: (_bytes(b"x", "data/x.docx")(r), _settings(sheet="data/x.docx")(r)),
@@ -197,3 +197,12 @@ def test_unknown_command_and_folder(tmp_path, monkeypatch, capsys):
     code, said = _call(monkeypatch, capsys, "run", str(tmp_path / "nowhere"))
     assert code == 2
     assert "there is no such folder" in said
+
+
+def test_filter_that_no_row_answers_to_is_said(review, monkeypatch, capsys):
+    analyses = {"a": {"outcome": "biomass", "where": {"study": ["S1", "S9"], "year": 2004}}}
+    _settings(analyses=analyses)(review)
+    code, said = _call(monkeypatch, capsys, "check", str(review))
+    assert code == 0
+    assert "analysis 'a', where: no row has study 'S9'; known here: 'S1', " in said
+    assert "2004" not in said

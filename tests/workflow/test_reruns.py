@@ -239,9 +239,10 @@ def test_why_names_new_and_gone_rows(review):
     rows = pd.read_csv(_sheet(review), dtype=str, keep_default_na=False)
     gone = rows[rows["outcome"] == "yield"]["row_id"].iloc[1]
     kept = rows[rows["row_id"] != gone]
-    _add_row(kept).to_csv(_sheet(review), index=False)
+    added = _add_row(kept).replace({"row_id": {f"N{len(kept)}": "brand new"}})
+    added.to_csv(_sheet(review), index=False)
     causes = next(r for r in explained(review) if r.step == "slice/yield").since
-    assert any("is new" in cause for cause in causes)
+    assert any(cause.startswith("row brand new is new (comparisons.csv, row ") for cause in causes)
     assert f"row {gone} is gone" in causes
     run_review(review)
 
@@ -306,7 +307,7 @@ def test_body_of_one_stage_reruns_it_and_what_follows(copied, review):
 
 def test_body_of_one_strategy_reruns_that_strategy(copied, review):
     path = copied / "src/drystone/stages/strategies/missing_cases.py"
-    path.write_text(path.read_text().replace("average=False", "average=bool(0)"))
+    path.write_text(path.read_text().replace("everywhere=False", "everywhere=bool(0)"))
     found = _run_copy(copied, review)
     expected = _strategies("yield", ("overall", "crop"), ("missing cases",))
     expected |= AFTER_FITS

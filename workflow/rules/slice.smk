@@ -6,5 +6,6 @@ rule slice_rows:
     output:
         rows=A + "/slice.parquet",
         ledger=A + "/ledger.parquet",
+        derivations=A + "/derivations.parquet",
     run:
         workflow_side.perform(PLAN, f"slice/{wildcards.analysis}")

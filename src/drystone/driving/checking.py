@@ -5,7 +5,9 @@ from __future__ import annotations
 from collections.abc import Callable
 from pathlib import Path
 
+from drystone.driving.filters import idle_filters
 from drystone.driving.plan import Plan, make_plan
+from drystone.driving.session import shown_path
 from drystone.words.levels import STOP
 
 FINDINGS_FILE = Path("results") / "check" / "findings.csv"
@@ -26,15 +28,21 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     findings = plan.state.table("findings")
     for line in collapse(findings):
         say(str(line))
+    for note in idle_filters(plan):
+        say(note)
     say(_count(plan))
     target = plan.review.root / FINDINGS_FILE
     findings_csv(findings, target)
-    say(f"All findings with their cells: {target.relative_to(plan.review.root)}")
+    say(f"All findings with their cells: {shown_path(target)}")
     plan.state.remember()
     return bool((findings["level"] == STOP).any())
 
 
 def _count(plan: Plan) -> str:
     rows, ledger = plan.state.table("rows"), plan.state.table("ledger")
-    usable = len(rows) - ledger["row_id"].nunique()
+    if rows.empty:
+        return (
+            f"The sheet has no rows yet; type your comparisons into {plan.review.settings.sheet}."
+        )
+    usable = len(rows) - len(ledger.drop_duplicates(["sheet", "sheet_row"]))
     return f"{len(rows)} rows: {usable} usable, {len(rows) - usable} in the ledger."

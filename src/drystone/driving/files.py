@@ -1,22 +1,12 @@
-"""Small files that are either old or new, never half written."""
+"""JSON records of the cache."""
 
 from __future__ import annotations
 
 import json
-import os
 from pathlib import Path
 from typing import Any
 
-
-def write_text(path: Path, text: str) -> None:
-    """Write ``text`` to ``path`` in one move; parents are made."""
-    path.parent.mkdir(parents=True, exist_ok=True)
-    partial = path.with_name(f".{path.name}.{os.getpid()}.part")
-    try:
-        partial.write_text(text, encoding="utf-8")
-        os.replace(partial, path)
-    finally:
-        partial.unlink(missing_ok=True)
+from drystone.tables.atomic import write_text
 
 
 def write_json(path: Path, content: Any) -> None:

@@ -6,23 +6,13 @@ import shutil
 from pathlib import Path
 
 from drystone.driving.bundled import bundled
-from drystone.driving.files import write_text
+from drystone.tables.atomic import write_text
 
 SNAKEFILE = """\
 # Plain `snakemake` works here too; `drystone run` is the same with one progress display.
 from drystone.driving.bundled import snakefile
 include: str(snakefile())
 rule review: input: rules.all.input
-"""
-
-PROFILE = """\
-# Read by plain `snakemake` in this folder.
-cores: 2
-force-use-threads: true      # stages run inside the engine's own process
-rerun-triggers: [mtime]      # the keys carry everything that decides; see drystone's DEVELOPERS.md
-rerun-incomplete: true
-keep-going: true
-max-checksum-file-size: 1000000000
 """
 
 IGNORED = """\
@@ -109,5 +99,6 @@ def _prepare(folder: Path) -> None:
     for name in ("config", "data", "profiles/default"):
         (folder / name).mkdir(parents=True, exist_ok=True)
     write_text(folder / "Snakefile", SNAKEFILE)
-    write_text(folder / "profiles" / "default" / "config.yaml", PROFILE)
+    profile = Path("profiles") / "default" / "config.yaml"
+    shutil.copyfile(bundled("workflow") / profile, folder / profile)
     write_text(folder / ".gitignore", IGNORED)

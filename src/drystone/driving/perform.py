@@ -12,9 +12,10 @@ import traceback
 from collections.abc import Callable
 from pathlib import Path
 
-from drystone.driving.files import write_json, write_text
+from drystone.driving.files import write_json
 from drystone.driving.plan import Plan
 from drystone.driving.steps import ANALYSES, Step
+from drystone.tables.atomic import write_text
 
 Stage = Callable[[Plan, Step], None]
 LOGGER = logging.getLogger("drystone.steps")
@@ -68,6 +69,8 @@ def say(error: BaseException) -> str:
         return "no space is left on the disk; free some and run again"
     if isinstance(error, OSError) and error.errno in (errno.EROFS, errno.EACCES, errno.EPERM):
         return f"cannot write {error.filename or 'a file'}; the folder is read-only"
+    if isinstance(error, FileExistsError | NotADirectoryError | IsADirectoryError):
+        return f"{error.filename} is in the way of a file or folder of drystone's; move it away"
     if isinstance(error, MemoryError):
         return "the memory is full"
     text = str(error).strip()
@@ -86,9 +89,8 @@ def _slice(plan: Plan, step: Step) -> None:
 
     plan.state.ensure()
     settings = plan.review.settings
-    target, ledger = (plan.review.root / path for path in step.outputs)
     analysis = settings.all_analyses()[step.analysis]
-    run(plan.state.folder, analysis, settings.outcomes, target, ledger)
+    run(plan.state.folder, analysis, settings.outcomes, _folder(plan, step))
 
 
 def _effects(plan: Plan, step: Step) -> None:
@@ -155,7 +157,8 @@ def _publish(plan: Plan, step: Step) -> None:
     from drystone.stages.publish_results import run
 
     _refuse_mixed(plan)
-    run(plan.review.root, plan.review.settings, plan.state.folder, run_id(plan))
+    root, settings = plan.review.root, plan.review.settings
+    run(root, settings, plan.state.folder, run_id(plan), plan.inputs)
 
 
 def run_id(plan: Plan) -> str:

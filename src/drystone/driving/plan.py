@@ -9,6 +9,7 @@ fresh clone without its own records.
 
 from __future__ import annotations
 
+import hashlib
 import os
 from dataclasses import dataclass
 from functools import cached_property
@@ -17,8 +18,8 @@ from typing import Any
 
 from drystone.driving.files import read_json, write_json
 from drystone.driving.fingerprint import CodeIndex, digest
-from drystone.driving.review import Review, open_review
-from drystone.driving.states import SheetState, forget_states, sheet_state
+from drystone.driving.review import CONFIG, Review, open_review
+from drystone.driving.states import SheetState, file_digest, forget_states, sheet_state
 from drystone.driving.steps import ANALYSES, Step, all_steps
 
 CODE_MEMORY = Path("keys") / "code.json"
@@ -54,6 +55,10 @@ class Plan:
         self.steps = all_steps(review.settings)
         self.code = CodeIndex(read_json(review.cache / CODE_MEMORY))
         self.state: SheetState = sheet_state(review, self.code)
+        config = review.root / CONFIG
+        self.inputs = dict(self.state.inputs)
+        if config.is_file():
+            self.inputs[CONFIG.as_posix()] = file_digest(config)
 
     @cached_property
     def keys(self) -> dict[str, dict[str, Any]]:
@@ -69,9 +74,9 @@ class Plan:
         found: dict[str, Pending] = {}
         for step in self.steps.values():
             before = self.record(step)
-            missing = tuple(path for path in step.outputs if not (self.review.root / path).exists())
-            if step.name == "publish" and not (self.review.results / "manifest.json").exists():
-                missing = (*missing, "results/manifest.json")
+            missing = tuple(path for path in step.outputs if not sound(self.review.root / path))
+            if step.name == "publish":
+                missing = (*missing, *changed_results(self.review.results))
             same = before is not None and before["digest"] == self.keys[step.name]["digest"]
             if not same or missing or any(name in found for name in step.upstream):
                 found[step.name] = Pending(step, self.keys[step.name], before, missing)
@@ -94,7 +99,7 @@ class Plan:
         if step.name not in self.pending:
             if present != key:
                 write_json(path, key)
-            os.utime(path, (LONG_AGO, LONG_AGO))
+            self._make_old(step)
             return
         if self._needs_another_key(step):
             tries = present.get("again", 0) if isinstance(present, dict) else 0
@@ -103,6 +108,16 @@ class Plan:
             write_json(path, key)
         elif path.stat().st_mtime <= LONG_AGO:
             os.utime(path)
+
+    def _make_old(self, step: Step) -> None:
+        """Give key and outputs of a step that is up to date old time stamps, in the steps' order.
+
+        So a copied folder looks to the engine as the one that it was copied from.
+        """
+        place = list(self.steps).index(step.name)
+        os.utime(self.review.root / step.key, (LONG_AGO, LONG_AGO))
+        for output in step.outputs:
+            os.utime(self.review.root / output, (LONG_AGO + 1 + place,) * 2)
 
     def _needs_another_key(self, step: Step) -> bool:
         """Whether the engine might take the outputs for good although the step must run.
@@ -160,6 +175,34 @@ class Plan:
             digest_of = self.state.slice_digest if sliced else self.state.figures_digest
             return digest_of(analysis)
         return self.state.check_digest() if step.rows == "check" else self.state.facts_digest()
+
+
+def sound(path: Path) -> bool:
+    """Whether an output exists and, for Parquet, has its end: a cut file is as good as none."""
+    if path.suffix != ".parquet":
+        return path.is_file()
+    try:
+        with path.open("rb") as file:
+            file.seek(-4, os.SEEK_END)
+            return file.read() == b"PAR1"
+    except OSError:
+        return False
+
+
+def changed_results(results: Path) -> list[str]:
+    """Published files that are gone or were changed since; the manifest first when it is gone."""
+    manifest = read_json(results / "manifest.json")
+    if not isinstance(manifest, dict) or "files" not in manifest:
+        return ["results/manifest.json"]
+    found = []
+    for name, wanted in manifest["files"].items():
+        try:
+            content = (results / name).read_bytes()
+        except OSError:
+            content = b""
+        if hashlib.sha256(content).hexdigest() != wanted:
+            found.append(f"results/{name}")
+    return found
 
 
 def read_back(parts: dict[str, Any]) -> dict[str, Any]:

@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 import shutil
+import signal
 import sys
+import threading
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from drystone.driving import exits
+from drystone.driving.filters import idle_filters
 from drystone.driving.front import Outcome, run
 from drystone.driving.plan import Plan
 
@@ -24,23 +27,25 @@ class Display:
 
     def __init__(self) -> None:
         self._bar: Progress | None = None
-        self._total = 0
         self._task: Any = None
-        self._phrases: dict[str, str] = {}
 
-    def begin(self, plan: Plan) -> None:
-        """Show how much there is to do."""
-        self._total = len(plan.pending)
-        self._phrases = {name: item.step.phrase for name, item in plan.pending.items()}
-        if not self._total or not sys.stderr.isatty():
+    def open(self) -> None:
+        """Show that something happens: reading a large sheet takes seconds."""
+        if not sys.stderr.isatty():
             return
         from rich.console import Console
         from rich.progress import BarColumn, MofNCompleteColumn, Progress, TextColumn
 
         columns = (BarColumn(), MofNCompleteColumn(), TextColumn("{task.description}"))
         self._bar = Progress(*columns, console=Console(stderr=True), transient=True)
-        self._task = self._bar.add_task("starting", total=self._total)
+        self._task = self._bar.add_task("reading config and sheet", total=None)
         self._bar.start()
+
+    def begin(self, plan: Plan) -> None:
+        """Show how much there is to do."""
+        if self._bar is not None:
+            total = len(plan.pending)
+            self._bar.update(self._task, total=total, description="starting the steps")
 
     def watch(self, event: dict[str, Any]) -> None:
         """Show one event of the worker."""
@@ -69,7 +74,9 @@ def run_review(folder: Path, cores: int, strict: bool = False, tidy: bool = Fals
             raise StrictStop
         display.begin(plan)
 
+    _end_calmly_on_signals()
     try:
+        display.open()
         outcome = run(folder, cores, begin, display.watch)
     except StrictStop:
         _say_stops(seen[0])
@@ -78,6 +85,13 @@ def run_review(folder: Path, cores: int, strict: bool = False, tidy: bool = Fals
     finally:
         display.end()
     return _last_word(seen[0], outcome, tidy)
+
+
+def _end_calmly_on_signals() -> None:
+    """Treat a request to end, or a closed terminal, as Ctrl-C."""
+    if threading.current_thread() is threading.main_thread():
+        for number in (signal.SIGTERM, signal.SIGHUP):
+            signal.signal(number, signal.default_int_handler)
 
 
 def _last_word(plan: Plan, outcome: Outcome, tidy: bool) -> int:
@@ -95,8 +109,11 @@ def _last_word(plan: Plan, outcome: Outcome, tidy: bool) -> int:
         return exits.FAILED
     _say_ran(plan, outcome)
     _say_stops(plan)
+    for note in idle_filters(plan):
+        _say(note)
     _say_leftovers(plan, tidy)
-    print(_shown(plan.review.results / "report.html"))  # noqa: T201 - the one line for scripts
+    plan.state.remember()
+    print(shown_path(plan.review.results / "report.html"))  # noqa: T201 - the one line for scripts
     return exits.DONE
 
 
@@ -105,7 +122,8 @@ def _say_ran(plan: Plan, outcome: Outcome) -> None:
     if not outcome.ran:
         _say(f"Nothing to do: all {total} steps are up to date.")
         return
-    _say(f"{len(outcome.ran)} of {total} steps ran; the others were up to date.")
+    others = "" if len(outcome.ran) == total else "; the others were up to date"
+    _say(f"{len(outcome.ran)} of {total} steps ran{others}.")
 
 
 def _say_stops(plan: Plan) -> None:
@@ -114,7 +132,6 @@ def _say_stops(plan: Plan) -> None:
         _say(f"{sum(by_rule.values())} of {rows} rows cannot be used and stand in the ledger:")
         for rule, count in by_rule.items():
             _say(f"  {count} x {rule}")
-    plan.state.remember()
 
 
 def _say_leftovers(plan: Plan, tidy: bool) -> None:
@@ -137,7 +154,8 @@ def _has_results(plan: Plan) -> bool:
     return (plan.review.results / "manifest.json").exists()
 
 
-def _shown(path: Path) -> Path:
+def shown_path(path: Path) -> Path:
+    """Path as a person types it from here."""
     here = Path.cwd()
     return path.relative_to(here) if path.is_relative_to(here) else path
 

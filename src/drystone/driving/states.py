@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import hashlib
 import os
+from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -43,11 +44,13 @@ class SheetState:
     ----------
     folder : where the stored intake is, or will be
     name : digest of file content, reading options and reading code
+    inputs : SHA-256 of the sheet's files as they were read
     """
 
     review: Review
     folder: Path
     name: str
+    inputs: dict[str, str] = field(default_factory=dict)
     _digests: dict[str, Any] = field(default_factory=dict)
     _tables: dict[str, pd.DataFrame] = field(default_factory=dict)
     _new: bool = False
@@ -78,13 +81,21 @@ class SheetState:
 
     def rows_left(self) -> tuple[int, dict[str, int]]:
         """Rows of the sheet, and how many left at the check by each rule."""
-        if "rows left" not in self._digests:
+
+        def count() -> list[Any]:
             counts = self.table("ledger")["rule"].value_counts()
             by_rule = {str(rule): int(number) for rule, number in counts.items()}
-            self._digests["rows left"] = [len(self.table("rows")), by_rule]
-            self._new = True
-        rows, rules = self._digests["rows left"]
+            return [len(self.table("rows")), by_rule]
+
+        rows, rules = self.remembered("rows left", count)
         return rows, rules
+
+    def remembered(self, name: str, compute: Callable[[], Any]) -> Any:
+        """What ``compute`` gives for this state of the sheet, computed once and then stored."""
+        if name not in self._digests:
+            self._digests[name] = compute()
+            self._new = True
+        return self._digests[name]
 
     def table(self, name: str) -> pd.DataFrame:
         """One stored table of the intake; the sheet is read when it has not been yet."""
@@ -116,10 +127,7 @@ class SheetState:
             self._new = False
 
     def _digest(self, name: str, content: Any) -> str:
-        if name not in self._digests:
-            self._digests[name] = digest(content())
-            self._new = True
-        return str(self._digests[name])
+        return str(self.remembered(name, lambda: digest(content())))
 
     def _slice_content(self, analysis: Analysis) -> list[str]:
         from drystone.stages.digest_rows import digest_table
@@ -165,14 +173,17 @@ def sheet_state(review: Review, code: CodeIndex) -> SheetState:
         include={"columns", "layout", "defaults", "outcomes", "missing_n", "zero_sd"}
     )
     reading = {"options": options, "path": review.settings.sheet}
-    parts = [_file_digest(review.root / path) for path in review.sheet_files()]
+    inputs = {path.as_posix(): file_digest(review.root / path) for path in review.sheet_files()}
     modules = SHEET_CODE + DIGEST_CODE
-    name = digest([parts, reading, code.closure(modules), code.libraries(SHEET_CODE)])
+    name = digest(
+        [list(inputs.values()), reading, code.closure(modules), code.libraries(SHEET_CODE)]
+    )
     folder = review.cache / "sheets" / name
-    return SheetState(review, folder, name, read_json(folder / "digests.json") or {})
+    return SheetState(review, folder, name, inputs, read_json(folder / "digests.json") or {})
 
 
-def _file_digest(path: Path) -> str:
+def file_digest(path: Path) -> str:
+    """SHA-256 of a file's content."""
     total = hashlib.sha256()
     with path.open("rb") as file:
         while piece := file.read(1 << 20):

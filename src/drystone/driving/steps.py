@@ -98,7 +98,7 @@ def _analysis_steps(name: str, analysis: Analysis, settings: Settings) -> Iterat
         f"slice/{name}",
         "slice_rows",
         f"rows of {name}",
-        _files(folder, "slice", "ledger"),
+        _files(folder, "slice", "ledger", "derivations"),
         settings={
             "analysis": analysis.model_dump(include={"outcome", "where", "where_not", "models"}),
             "flip_sign": flips,

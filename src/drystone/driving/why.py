@@ -56,7 +56,7 @@ def _own_causes(plan: Plan, item: Pending) -> Iterator[str]:
         gone = name not in new["upstream"]
         yield f"{'gone' if gone else 'new'}: {_phrase(plan, name)}"
     for path in item.missing:
-        yield f"{path} is missing"
+        yield f"{path} is missing, damaged or was changed"
 
 
 def _never(plan: Plan, item: Pending) -> str:
@@ -79,12 +79,15 @@ def _setting_causes(old: Any, new: Any, path: str) -> Iterator[str]:
                 old.get(key), new.get(key), f"{path}: {key}" if path else key
             )
         return
+    if old is None or new is None:
+        yield f"option {path} is {'new' if old is None else 'gone'}"
+        return
     yield f"option {path} went {_brief(old)} -> {_brief(new)}"
 
 
 def _brief(value: Any) -> str:
-    text = "absent" if value is None else str(value)
-    return text if len(text) <= 60 else f"{text[:57]}..."
+    text = ", ".join(map(str, value)) if isinstance(value, list) else str(value)
+    return (text if len(text) <= 60 else f"{text[:57]}...") or "blank"
 
 
 def _row_causes(plan: Plan, item: Pending) -> Iterator[str]:

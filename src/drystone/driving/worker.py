@@ -87,16 +87,17 @@ def _execute(root: Path, cores: int, errors: logging.Handler) -> None:
         )
         graph = workflow.dag(
             types.DAGSettings(
-                force_incomplete=True,
                 rerun_triggers=frozenset({types.RerunTrigger.MTIME}),
                 max_checksum_file_size=10**9,
             )
         )
         graph.unlock()  # safe: this process holds the folder, so the engine's lock is a dead run's
+        # The engine's marks of incomplete outputs are not asked: a step without a done record has
+        # a key that makes it run again, and one with a record is complete.
         graph.execute_workflow(
             executor="local",
             execution_settings=types.ExecutionSettings(
-                use_threads=True, keep_going=True, latency_wait=0
+                use_threads=True, keep_going=True, latency_wait=0, ignore_incomplete=True
             ),
             scheduling_settings=types.SchedulingSettings(scheduler="greedy"),
             scheduler_settings=GreedySchedulerSettings(),

@@ -6,12 +6,8 @@ from collections.abc import Iterator
 
 import pandas as pd
 
-from drystone.maths.average_variation import (
-    DOMINATING_SHARE,
-    FEWEST_ARMS,
-    SPREAD_OF_VERSIONS,
-)
-from drystone.report import numbers
+from drystone.report import few_studies, numbers
+from drystone.report.cautions_averages import average_cautions
 from drystone.report.facts import (
     AnalysisFacts,
     ModelFacts,
@@ -19,13 +15,32 @@ from drystone.report.facts import (
     StrategyFacts,
     main_model,
     main_strategy,
-    records,
 )
+from drystone.report.methods_spreads import borrows
 from drystone.report.sentences import listed
-from drystone.words import levels, strategies
+from drystone.words import levels, scales, strategies
 
-FEWEST_DF = 4.0  # Tipton 2015, Psych Methods 20:375: below it the t reference is not to be trusted
 SECOND_ORDER_SHARE = 0.25
+GENERAL = (
+    "This page is a statistical summary of what was typed into the extraction sheet. It is not "
+    "advice, and it recommends no action.",
+    "A narrow interval does not make a weak study strong: judge the quality and the relevance of "
+    "the studies before leaning on any number here.",
+    "Where a decision touches land, animals, health, safety or the law, local rules and qualified "
+    "practice come first.",
+    "A percent change here is a median ratio: under the model, which is symmetric on the log "
+    "scale, half of the true ratios are expected above it. The mean ratio is larger when effects "
+    "differ between studies or between rows.",
+)
+OF_THE_AVERAGE = (
+    "No interval here carries the uncertainty of the average CV itself: where a CV is borrowed, it "
+    "enters as if it were known."
+)
+
+
+def general_cautions(facts: ReportFacts) -> tuple[str, ...]:
+    """Cautions that hold for every number on the page."""
+    return (*GENERAL, OF_THE_AVERAGE) if borrows(facts) else GENERAL
 
 
 def review_cautions(facts: ReportFacts) -> tuple[str, ...]:
@@ -52,14 +67,13 @@ def analysis_cautions(facts: ReportFacts, analysis: AnalysisFacts) -> tuple[str,
     model = main_model(strategy)
     found: list[str] = []
     found += _refusals(analysis)
-    found += _few_studies(facts, model)
+    found += _few_studies(model)
     found += _complete_cases(facts, analysis)
-    found += _dominating_arms(analysis)
-    found += _versions_apart(strategy)
-    found += _second_order(analysis)
+    found += average_cautions(facts, analysis, strategy)
+    found += _second_order(analysis, strategy)
     found += _normality(analysis)
     found += _shared_controls(analysis)
-    found += model.warnings if model is not None else ()
+    found += _of_the_fit(model)
     return tuple(dict.fromkeys(found))
 
 
@@ -74,14 +88,17 @@ def _refusals(analysis: AnalysisFacts) -> Iterator[str]:
         yield f"Model '{name}' was refused under {under}: {reason.rstrip('.')}."
 
 
-def _few_studies(facts: ReportFacts, model: ModelFacts | None) -> Iterator[str]:
+def _few_studies(model: ModelFacts | None) -> Iterator[str]:
     overall = None if model is None else model.overall()
-    if overall is not None and overall["df"] < FEWEST_DF:
-        yield (
-            f"Too few studies: the interval of the overall effect rests on "
-            f"{numbers.number(overall['df'], 2)} degrees of freedom. Below "
-            f"{FEWEST_DF:g} its coverage cannot be trusted."
-        )
+    if overall is not None and (text := few_studies.warning(float(overall["df"]))):
+        yield text
+
+
+def _of_the_fit(model: ModelFacts | None) -> Iterator[str]:
+    """Sentences of the fit itself, but for the one on few studies, which the page says alone."""
+    for text in () if model is None else model.warnings:
+        if not text.startswith(few_studies.OPENING):
+            yield text
 
 
 def _complete_cases(facts: ReportFacts, analysis: AnalysisFacts) -> Iterator[str]:
@@ -99,45 +116,28 @@ def _complete_cases(facts: ReportFacts, analysis: AnalysisFacts) -> Iterator[str
         yield text
 
 
-def _dominating_arms(analysis: AnalysisFacts) -> Iterator[str]:
-    seen = set()
-    for strategy in analysis.strategies:
-        for row in records(_used(strategy)):
-            heavy = row["largest_share"] > DOMINATING_SHARE
-            key = row["outcome"], row["arm"], row["largest_arm"]
-            if heavy and row["reporting_arms"] >= FEWEST_ARMS and key not in seen:
-                seen.add(key)
-                yield (
-                    f"One arm owns {numbers.share(row['largest_share'])} of the average CV "
-                    f"({row['outcome']}, {row['arm']}): {numbers.typed(row['largest_arm'])}. "
-                    "Ways out: leave out arms that fail the normal-approximation check, trim, "
-                    "or average over both arms; compare the versions in the table of averages."
-                )
-
-
-def _versions_apart(strategy: StrategyFacts) -> Iterator[str]:
-    factors = {}
-    for (outcome, arm), part in strategy.averages.groupby(["outcome", "arm"], sort=False):
-        low, high = float(part["cv2"].min()), float(part["cv2"].max())
-        if low > 0 and high / low > SPREAD_OF_VERSIONS:
-            factors[f"{outcome}, {arm}"] = high / low
-    if factors:
-        where = "; ".join(f"{key}: {numbers.number(x, 2)}" for key, x in factors.items())
-        yield (
-            f"Versions of the average squared CV differ by more than a factor of "
-            f"{SPREAD_OF_VERSIONS:g} ({where}), so the reading of the average matters; they stand "
-            "side by side under Why."
-        )
-
-
-def _second_order(analysis: AnalysisFacts) -> Iterator[str]:
+def _second_order(analysis: AnalysisFacts, main: StrategyFacts) -> Iterator[str]:
+    """The share is that of the rows' own CVs, so it says which strategy is concerned."""
     shares = analysis.effects["second_order_share"]
     heavy = analysis.effects.loc[shares > SECOND_ORDER_SHARE, "row_id"]
-    if len(heavy):
-        yield (
-            f"In {numbers.count(len(heavy), 'row')} the second-order term is more than a quarter "
-            f"of the sampling variance ({_some(heavy)}): their CVs are large for their n."
-        )
+    if not len(heavy):
+        return
+    yield (
+        f"In {numbers.count(len(heavy), 'row')} the second-order term, with the rows' own CVs, is "
+        f"more than a quarter of the sampling variance ({_some(heavy)}): their CVs are large for "
+        f"their n. {_own_cvs(analysis, main, heavy)}"
+    )
+
+
+def _own_cvs(analysis: AnalysisFacts, main: StrategyFacts, heavy: pd.Series) -> str:
+    if analysis.settings.order != scales.SECOND:
+        return "This analysis is first order, so the term is not used."
+    used = main.sampling[main.sampling["row_id"].isin(heavy)]
+    own = ((used["control_cv_source"] == "own") & (used["treatment_cv_source"] == "own")).sum()
+    if own == 0:
+        return f"The main strategy ({main.name}) does not use these CVs there."
+    where = "there" if own == len(heavy) else f"in {numbers.whole(own)} of them"
+    return f"The main strategy ({main.name}) uses these CVs {where}."
 
 
 def _normality(analysis: AnalysisFacts) -> Iterator[str]:
@@ -153,10 +153,6 @@ def _normality(analysis: AnalysisFacts) -> Iterator[str]:
 def _shared_controls(analysis: AnalysisFacts) -> Iterator[str]:
     if analysis.settings.shared_controls == "ignore":
         yield "Rows that share an arm are treated as independent, as the config declares."
-
-
-def _used(strategy: StrategyFacts) -> pd.DataFrame:
-    return strategy.averages[strategy.averages["used"].astype(bool)]
 
 
 def _some(names: pd.Series, most: int = 5) -> str:

@@ -80,7 +80,7 @@ def _entry(item: Record, links: Links) -> Row:
 
 
 def derivation_table(facts: ReportFacts, links: Links) -> Shown:
-    """Every SD that was computed from something else."""
+    """Every SD that was computed from something else or read from another row."""
     heads = ("Row", "Study", "Arm", "#SD", "Rule", "From", "Assumed")
     rows = [
         row(
@@ -97,7 +97,7 @@ def derivation_table(facts: ReportFacts, links: Links) -> Shown:
         )
         for position, item in enumerate(records(facts.derivations), start=1)
     ]
-    return shown("SDs that were computed from another spread", heads, rows)
+    return shown("SDs that were computed from another spread or read from another row", heads, rows)
 
 
 def _row_cell(row_id: object, links: Links) -> Cell:

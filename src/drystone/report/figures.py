@@ -8,6 +8,7 @@ Names of studies are data only, never part of an expression.
 
 from __future__ import annotations
 
+import math
 from pathlib import Path
 
 from drystone.report import charts, numbers
@@ -95,7 +96,10 @@ def _strategies(facts: ReportFacts, analysis: AnalysisFacts) -> Spec:
 
 def _studies(ladder: Ladder) -> Spec:
     values = [_line(f"{study.name} ({len(study.rows)})", study, ladder) for study in ladder.studies]
-    title = "Change in each study (rows); band: overall interval; outlined: most rows lack an SD"
+    title = (
+        f"Change in each study (rows); {_reach(ladder)}; band: overall interval; "
+        "outlined: most rows lack an SD"
+    )
     return charts.intervals(values, title, 14, ladder.scale, _band(ladder))
 
 
@@ -105,20 +109,33 @@ def _rows(ladder: Ladder) -> Spec:
         for study in ladder.studies
         for row in study.rows
     ]
-    title = "Change in each row; band: overall interval; outlined: an arm lacks an SD"
+    title = (
+        f"Change in each row; {_reach(ladder)}; band: overall interval; "
+        "outlined: an arm lacks an SD"
+    )
     return charts.intervals(values, title, 14, ladder.scale, _band(ladder))
 
 
+def _reach(ladder: Ladder) -> str:
+    return f"bar: {numbers.number(ladder.times)} SE"
+
+
 def _line(label: str, item: LadderStudy | LadderRow, ladder: Ladder) -> Spec:
-    inside = ladder.scale.low <= item.effect <= ladder.scale.high
     return {
         "label": label,
-        "estimate": item.effect,
-        "ci_low": item.low,
-        "ci_high": item.high,
+        "estimate": _json(item.effect),
+        "ci_low": _json(item.low),
+        "ci_high": _json(item.high),
         "hollow": item.gappy,
-        "beyond": "" if inside else f"{numbers.percent(item.effect)}, off the scale",
+        "beyond": _beyond(item.effect, ladder),
     }
+
+
+def _beyond(effect: float, ladder: Ladder) -> str:
+    if math.isnan(effect):
+        return numbers.NOT_KNOWN
+    inside = ladder.scale.low <= effect <= ladder.scale.high
+    return "" if inside else f"{numbers.percent(effect)}, off the scale"
 
 
 def _band(ladder: Ladder) -> list[Spec]:

@@ -7,7 +7,7 @@ from functools import partial
 
 import pandas as pd
 
-from drystone.report import numbers, sentences
+from drystone.report import few_studies, numbers, sentences
 from drystone.report.cautions import analysis_cautions
 from drystone.report.facts import (
     AnalysisFacts,
@@ -20,7 +20,7 @@ from drystone.report.facts import (
 )
 from drystone.report.flow import RowFlow, row_flow
 from drystone.report.scale import Bar, Tick, ratio_scale
-from drystone.report.sentences import Verdict
+from drystone.report.verdict import Verdict, estimates_of, verdict
 
 
 @dataclass(frozen=True)
@@ -109,7 +109,7 @@ def _basis(facts: ReportFacts, strategy: StrategyFacts, overall: pd.Series | Non
     return (
         f"From {rows} of {studies}. Missing spreads: {strategy.name} "
         f"({sentences.strategy_gloss(strategy.settings)}). Interval: {kind}, "
-        f"{numbers.number(float(overall['df']), 3)} degrees of freedom."
+        f"{few_studies.marked(float(overall['df']))} degrees of freedom."
     )
 
 
@@ -124,7 +124,8 @@ def _no_result(model: ModelFacts | None, strategy: StrategyFacts) -> str:
 def _verdict(facts: ReportFacts, analysis: AnalysisFacts, model: ModelFacts | None) -> Verdict:
     table = analysis.side_by_side
     name = model.name if model is not None else ""
-    return sentences.verdict(
-        sentences.estimates_of(table[table["model"] == name]),
+    declared = [strategy.name for strategy in facts.settings.strategies]
+    return verdict(
+        estimates_of(table[table["model"] == name], declared),
         facts.settings.inference.confidence_percent,
     )

@@ -66,8 +66,12 @@ class LadderStudy:
 
 @dataclass(frozen=True)
 class Ladder:
-    """All studies, largest effect first, with the overall effect behind them."""
+    """All studies, largest effect first, with the overall effect behind them.
 
+    ``times`` is how many standard errors the bars of studies and rows reach.
+    """
+
+    times: float
     scale: RatioScale
     ticks: tuple[Tick, ...]
     interval: tuple[float, float] | None
@@ -75,6 +79,11 @@ class Ladder:
     predicted: Bar | None
     studies: tuple[LadderStudy, ...]
     scrolls: bool
+
+    @property
+    def without_bar(self) -> int:
+        """Studies whose rows have a covariance that cannot be."""
+        return sum(study.bar is None for study in self.studies)
 
 
 def build_ladder(
@@ -94,8 +103,9 @@ def build_ladder(
         rows.setdefault(study, []).append(row)
     years = _years(facts.studies)
     studies = [_study(s, scale, times, rows.get(s.study, []), years) for s in summaries]
-    studies.sort(key=lambda study: -study.effect)
+    studies.sort(key=lambda study: (math.isnan(study.effect), -study.effect))
     return Ladder(
+        times,
         scale,
         scale.ticks(),
         None if overall is None else (float(overall["ci_low"]), float(overall["ci_high"])),
@@ -183,7 +193,7 @@ def _row(
     times: float,
     places: tuple[str, tuple[tuple[str, str], ...]],
 ) -> LadderRow:
-    effect, half = float(used["effect"]), times * math.sqrt(float(used["sampling_variance"]))
+    effect, half = float(used["effect"]), times * _root(float(used["sampling_variance"]))
     low, high = effect - half, effect + half
     return LadderRow(
         str(record["row_id"]),
@@ -201,6 +211,11 @@ def _row(
         numbers.percent_with_interval(effect, low, high),
         scale.bar(effect, low, high),
     )
+
+
+def _root(variance: float) -> float:
+    """Standard error; NaN, so that no bar is drawn, for a variance that cannot be."""
+    return math.sqrt(variance) if variance >= 0 else math.nan
 
 
 def _where(record: Record) -> str:

@@ -64,6 +64,8 @@ def number(value: float, digits: int = 3) -> str:
         return NOT_KNOWN
     if value == 0:
         return "0"
+    if math.isinf(value):
+        return "infinite" if value > 0 else f"{MINUS}infinite"
     size = math.floor(math.log10(abs(value)))
     if size < -6 or size > 8:
         return f"{value:.{digits - 1}e}".replace("-", MINUS)
@@ -82,6 +84,15 @@ def number_interval(low: float, high: float, digits: int = 3) -> str:
     return f"{number(low, digits)} to {number(high, digits)}"
 
 
+def below(value: float, limit: float, digits: int = 3) -> str:
+    """A number below ``limit`` with as many digits as it takes not to print as the limit."""
+    text = number(value, digits)
+    while digits < 9 and text == number(limit, digits):
+        digits += 1
+        text = number(value, digits)
+    return text
+
+
 def p_value(value: float) -> str:
     """P value with two digits, or '< 0.001'."""
     if not _known(value):
@@ -90,10 +101,17 @@ def p_value(value: float) -> str:
 
 
 def share(value: float) -> str:
-    """Share between 0 and 1 as a percentage without sign, for example '31 %'."""
+    """Share between 0 and 1 as a percentage without sign, for example '31 %'.
+
+    Only all prints as '100 %' and only nothing as '0 %'.
+    """
     if not _known(value):
         return NOT_KNOWN
     shown = 100 * value
+    if 99.5 <= shown < 100:
+        return f"> 99{FIXED_SPACE}%"
+    if 0 < shown < 0.05:
+        return f"< 0.1{FIXED_SPACE}%"
     return f"{_fixed(shown, 1 if 0 < shown < 9.95 else 0)}{FIXED_SPACE}%"
 
 

@@ -8,11 +8,12 @@ from functools import lru_cache
 from jinja2 import Environment, PackageLoader, StrictUndefined
 
 from drystone.report import methods, numbers
-from drystone.report.cautions import review_cautions
+from drystone.report.cautions import general_cautions, review_cautions
 from drystone.report.checked import derivation_table, finding_groups, ledger_groups
 from drystone.report.facts import AnalysisFacts, ReportFacts, main_strategy
 from drystone.report.found import Found, found
 from drystone.report.links import Links, build_links
+from drystone.report.references import references
 from drystone.report.sure import Sure, sure
 from drystone.report.why import Why, why
 
@@ -49,8 +50,8 @@ def render_page(facts: ReportFacts) -> str:
             ledger=ledger_groups(facts, links),
             derivations=derivation_table(facts, links),
             methods=methods.methods(facts),
-            references=methods.references(facts),
-            cautions=methods.CAUTIONS,
+            references=references(facts),
+            cautions=general_cautions(facts),
             person=methods.PERSON,
         )
     )

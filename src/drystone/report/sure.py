@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from functools import partial
 
-from drystone.report import numbers
+from drystone.report import few_studies, numbers
 from drystone.report.facts import (
     AnalysisFacts,
     ModelFacts,
@@ -17,21 +17,17 @@ from drystone.report.facts import (
     records,
 )
 from drystone.report.scale import Bar, RatioScale, Tick, ratio_scale
-from drystone.report.sentences import strategy_gloss
+from drystone.report.sentences import listed, strategy_gloss
 from drystone.report.tables_shown import Shown, row, shown
-from drystone.words import strategies
-
-ROW_SET_WORDS = {
-    strategies.ALL_ROWS: "all usable rows",
-    strategies.COMPLETE_ROWS: "rows with both SDs",
-}
+from drystone.report.verdict import ROW_SET_WORDS
+from drystone.words import scales
 
 LEVEL_WORDS = {"study": "Between studies", "row": "Between rows of a study"}
 
 
 @dataclass(frozen=True)
 class SideRow:
-    """One strategy in the comparison."""
+    """One strategy in the comparison; ``beside`` is the model-based interval where not the main."""
 
     strategy: str
     gloss: str
@@ -50,15 +46,21 @@ class SideRow:
 
 @dataclass(frozen=True)
 class Sure:
-    """Section 'How sure' of one analysis."""
+    """Section 'How sure' of one analysis.
+
+    ``two_kinds`` says that a model-based interval stands beside the main one, ``blanks`` why
+    measures of heterogeneity are not given, where they are not.
+    """
 
     model: str
     ticks: tuple[Tick, ...]
     zero: float
     sides: tuple[SideRow, ...]
     main_kind: str
+    two_kinds: bool
     heterogeneity: Shown
     components: Shown
+    blanks: str
 
 
 def sure(facts: ReportFacts, analysis: AnalysisFacts) -> Sure | None:
@@ -69,18 +71,21 @@ def sure(facts: ReportFacts, analysis: AnalysisFacts) -> Sure | None:
     table = analysis.side_by_side[analysis.side_by_side["model"] == model.name]
     limits = [float(x) for name in ("estimate", "ci_low", "ci_high") for x in table[name]]
     scale = ratio_scale([], limits)
+    two_kinds = facts.settings.inference.interval == scales.CLUSTER_ROBUST
     return Sure(
         model.name,
         scale.ticks(),
         scale.at(0.0),
-        tuple(_side(record, analysis, scale) for record in records(table)),
-        facts.settings.inference.interval,
+        tuple(_side(record, analysis, scale, two_kinds) for record in records(table)),
+        facts.settings.inference.interval.replace(" ", "-"),
+        two_kinds,
         _heterogeneity(analysis, model.name),
         _components(analysis, model.name),
+        _blanks(analysis, model.name),
     )
 
 
-def _side(record: Record, analysis: AnalysisFacts, scale: RatioScale) -> SideRow:
+def _side(record: Record, analysis: AnalysisFacts, scale: RatioScale, two_kinds: bool) -> SideRow:
     strategy = analysis.strategy(str(record["strategy"]))
     model = strategy.model(str(record["model"])) if strategy is not None else None
     overall = model.overall() if model is not None else None
@@ -94,11 +99,11 @@ def _side(record: Record, analysis: AnalysisFacts, scale: RatioScale) -> SideRow
         numbers.whole(record["rows"]),
         numbers.whole(record["studies"]),
         numbers.percent_with_interval(*ends),
-        numbers.number(get("df")),
-        numbers.percent_interval(*beside[1:]),
+        few_studies.marked(get("df")),
+        numbers.percent_interval(*beside[1:]) if two_kinds else "",
         numbers.percent_interval(get("pi_low"), get("pi_high")),
         scale.bar(*ends),
-        scale.bar(*beside),
+        scale.bar(*beside) if two_kinds else None,
         record["refused"] if isinstance(record["refused"], str) else "",
         bool(record["primary"]),
     )
@@ -134,6 +139,22 @@ def _heterogeneity(analysis: AnalysisFacts, name: str) -> Shown:
                 )
             )
     return shown("How much true effects differ, under each strategy", heads, rows)
+
+
+def _blanks(analysis: AnalysisFacts, name: str) -> str:
+    """Why Q and I2 are not there; the engine leaves them out only where V has no inverse."""
+    blank = [
+        strategy.name
+        for strategy, model in _fitted(analysis, name)
+        if model.heterogeneity["q"].isna().any()
+    ]
+    if not blank:
+        return ""
+    return (
+        f"Under {listed(blank)}, Q and I² are {numbers.NOT_KNOWN}: some rows are perfectly "
+        "correlated (they share both arms, or an arm without spread), so the sampling covariance "
+        "has no inverse."
+    )
 
 
 def _components(analysis: AnalysisFacts, name: str) -> Shown:

@@ -3,13 +3,11 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
 from dataclasses import dataclass
 
 from drystone.report import numbers
 from drystone.report.facts import (
     AnalysisFacts,
-    ModelFacts,
     Record,
     ReportFacts,
     StrategyFacts,
@@ -20,6 +18,7 @@ from drystone.report.facts import (
 from drystone.report.gaps import GapStudy, gap_counts, gap_studies
 from drystone.report.ladder import Ladder, build_ladder
 from drystone.report.links import Links
+from drystone.report.moderators import moderator_tables
 from drystone.report.sentences import listed
 from drystone.report.spread import SpreadPicture, spread_pictures
 from drystone.report.tables_shown import Row, Shown, row, shown
@@ -32,6 +31,7 @@ class Why:
     strategy: str
     fitted: bool
     ladder: Ladder
+    reach: str
     gaps: tuple[GapStudy, ...]
     gap_counts: Shown
     spread: tuple[SpreadPicture, ...]
@@ -43,15 +43,17 @@ def why(facts: ReportFacts, analysis: AnalysisFacts, links: Links) -> Why:
     """Section 'Why' of ``analysis``."""
     strategy = main_strategy(facts, analysis)
     model = main_model(strategy)
+    ladder = build_ladder(facts, analysis, strategy, model, links)
     return Why(
         strategy.name,
         model is not None and not model.refused,
-        build_ladder(facts, analysis, strategy, model, links),
+        ladder,
+        numbers.number(ladder.times),
         gap_studies(analysis.slice, facts.studies, links.of(analysis)),
         _gap_table(analysis),
         spread_pictures(analysis.slice),
         tuple(_averages(group) for group in _groups(analysis)),
-        tuple(_moderator_tables(facts, analysis, strategy)),
+        tuple(moderator_tables(facts, analysis, strategy)),
     )
 
 
@@ -116,71 +118,4 @@ def _average(item: Record) -> Row:
             "; ".join(note for note in notes if note),
         ),
         strong=used,
-    )
-
-
-def _moderator_tables(
-    facts: ReportFacts, analysis: AnalysisFacts, strategy: StrategyFacts
-) -> Iterator[Shown]:
-    for model in strategy.models:
-        if not model.is_overall and not model.refused:
-            yield _coefficients(facts, strategy, model)
-            yield _across(analysis, model)
-
-
-def _coefficients(facts: ReportFacts, strategy: StrategyFacts, model: ModelFacts) -> Shown:
-    level = numbers.level_percent(facts.settings.inference.confidence_percent)
-    heads = (
-        "Coefficient", "#As percent (interval)", "#Log scale", f"#{level} interval", "#SE", "#df",
-        "#p", "#Model-based interval",
-    )  # fmt: skip
-    rows = [
-        row(
-            (
-                str(item["coefficient"]),
-                numbers.percent_with_interval(item["estimate"], item["ci_low"], item["ci_high"]),
-                numbers.number(item["estimate"]),
-                numbers.number_interval(item["ci_low"], item["ci_high"]),
-                numbers.number(item["se"]),
-                numbers.number(item["df"]),
-                numbers.p_value(item["p"]),
-                numbers.number_interval(item["ci_low_model"], item["ci_high_model"]),
-            )
-        )
-        for item in records(model.coefficients)
-    ]
-    first = model.coefficients.iloc[0]
-    size = f"{numbers.count(int(first['rows']), 'row')} of " + numbers.count(
-        int(first["studies"]), "study", "studies"
-    )
-    explained = "".join(
-        f" R² marginal {numbers.share(item['r2_marginal'])}, conditional "
-        f"{numbers.share(item['r2_conditional'])}."
-        for item in records(model.heterogeneity)
-    )
-    return shown(
-        f"Model '{model.name}', {model.formula}, under '{strategy.name}': {size}.{explained} A "
-        "coefficient is a difference on the log scale; as percent it multiplies the ratio.",
-        heads,
-        rows,
-    )
-
-
-def _across(analysis: AnalysisFacts, model: ModelFacts) -> Shown:
-    table = analysis.side_by_side[analysis.side_by_side["model"] == model.name]
-    names = list(dict.fromkeys(table["strategy"]))
-    cells: dict[tuple[str, str], str] = {}
-    refused = {item["strategy"] for item in records(table) if isinstance(item["refused"], str)}
-    for item in records(table):
-        text = numbers.percent_with_interval(item["estimate"], item["ci_low"], item["ci_high"])
-        cells[item["coefficient"], item["strategy"]] = text
-    wanted = [str(name) for name in model.coefficients["coefficient"]]
-    rows = [
-        row((name, *("refused" if s in refused else cells.get((name, s), "") for s in names)))
-        for name in wanted
-    ]
-    return shown(
-        f"Model '{model.name}' over the strategies, as percent",
-        ("Coefficient", *(f"#{name}" for name in names)),
-        rows,
     )

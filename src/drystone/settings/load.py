@@ -11,6 +11,16 @@ from drystone.settings.model import Settings
 from drystone.settings.problems import ConfigProblem, nearest
 from drystone.settings.strict_yaml import Document, Location, load_strict, parse_strict
 
+PLAIN = {
+    "bool_type": "must be true or false",
+    "string_type": "must be text",
+    "float_type": "must be a number",
+    "dict_type": "must hold names with values under them",
+    "tuple_type": "must be a list",
+    "model_type": "must hold options under it",
+    "model_attributes_type": "must hold options under it",
+}
+
 
 def load_settings(path: Path) -> Settings:
     """Read and check the config at ``path``.
@@ -49,9 +59,13 @@ def _problem(error: ValidationError, document: Document, name: str) -> ConfigPro
     first = faults[0]
     location = tuple(first["loc"])
     more = f" (and {len(faults) - 1} more)" if len(faults) > 1 else ""
-    where = ": ".join(str(step) for step in location)
+    where = ": ".join(_step(step) for step in location)
     message = f"{where}: {_sentence(first, location)}" if where else _sentence(first, location)
     return ConfigProblem(message + more, name, document.line(location))
+
+
+def _step(step: str | int) -> str:
+    return f"item {step + 1}" if isinstance(step, int) else step
 
 
 def _sentence(fault: Any, location: Location) -> str:
@@ -59,8 +73,10 @@ def _sentence(fault: Any, location: Location) -> str:
         return f"unknown key; {nearest(str(location[-1]), _known_keys(location[:-1]))}"
     if fault["type"] == "missing":
         return "is required and absent"
-    text = str(fault["msg"]).removeprefix("Value error, ")
+    text = PLAIN.get(fault["type"], str(fault["msg"]).removeprefix("Value error, "))
     given = fault.get("input")
+    if given is None:
+        return f"{text}, and it is empty"
     if fault["type"] == "value_error" or isinstance(given, dict | list | tuple | BaseModel):
         return text
     return f"{text} (it is {given!r})"

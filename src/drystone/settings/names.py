@@ -11,6 +11,7 @@ _RESERVED = {"con", "prn", "aux", "nul", "side_by_side", "sensitivity", "rehears
     f"{port}{digit}" for port in ("com", "lpt") for digit in range(10)
 }
 LONGEST = 60
+_FILES = (".parquet", ".csv", ".json")  # endings of files that lie beside these folders
 
 
 def check_name(name: str, what: str) -> str:
@@ -28,6 +29,8 @@ def check_name(name: str, what: str) -> str:
             f"{what} '{name}' cannot be a folder's name: use letters, digits, space, dash, dot "
             "and underscore, begin with a letter or digit, end without dot or space"
         )
+    if plain.casefold().endswith(_FILES):
+        raise ValueError(f"{what} '{name}' ends like a file of the results; choose another name")
     if plain.casefold().split(".")[0] in _RESERVED or len(plain) > LONGEST:
         raise ValueError(
             f"{what} '{name}' is reserved or longer than {LONGEST} characters; choose another name"

@@ -5,6 +5,8 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterable
 
+MOST_NAMED = 15
+
 
 class ConfigProblem(ValueError):
     """A config that cannot be used.
@@ -28,4 +30,5 @@ def nearest(word: str, known: Iterable[str]) -> str:
     close = difflib.get_close_matches(word, options, n=1, cutoff=0.6)
     if close:
         return f"did you mean '{close[0]}'?"
-    return "known here: " + ", ".join(f"'{option}'" for option in options)
+    more = ", ..." if len(options) > MOST_NAMED else ""
+    return "known here: " + ", ".join(f"'{option}'" for option in options[:MOST_NAMED]) + more

@@ -115,7 +115,10 @@ def _build(node: yaml.Node, at: Location, lines: dict[Location, int], name: str)
         return _build_mapping(node, at, lines, name)
     if isinstance(node, yaml.SequenceNode):
         return [_build(item, (*at, i), lines, name) for i, item in enumerate(node.value)]
-    return _plain(node)
+    try:
+        return _plain(node)
+    except ValueError as error:
+        raise ConfigProblem("holds a number of far too many digits", name, lines[at]) from error
 
 
 def _build_mapping(
@@ -157,5 +160,5 @@ def _yaml_line(error: yaml.YAMLError) -> int | None:
 
 def _yaml_message(error: yaml.YAMLError) -> str:
     problem = getattr(error, "problem", None) or str(error).splitlines()[0]
-    hint = "; indent with spaces" if "\\t" in problem or "tab" in problem else ""
+    hint = "; indent with spaces" if "'\\t'" in problem else ""
     return f"is not valid YAML: {problem}{hint}"

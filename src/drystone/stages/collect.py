@@ -73,6 +73,16 @@ def whole_ledger(root: Path, settings: Settings, intake: Path) -> pd.DataFrame:
     return conform(table, check.LEDGER)
 
 
+def whole_derivations(root: Path, settings: Settings, intake: Path) -> pd.DataFrame:
+    """SDs that the check computed, and those that a slice read from another row, each once."""
+    parts = [load_table(intake, "derivations")]
+    for name in settings.all_analyses():
+        parts.append(read_table(analysis_folder(root, name) / "derivations.parquet"))
+    filled = [part for part in parts if len(part)] or parts[:1]
+    table = pd.concat(filled, ignore_index=True).drop_duplicates()
+    return conform(table, check.DERIVATIONS)
+
+
 def elsewhere(rows: pd.DataFrame, analysis: Analysis, settings: Settings) -> frozenset[str]:
     """Ids of rows whose outcome is a known one that the analysis does not ask for."""
     other = rows["outcome"].isin(settings.outcomes) & ~rows["outcome"].isin(analysis.outcome)

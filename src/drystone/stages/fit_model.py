@@ -5,6 +5,7 @@ A model that cannot be fitted is a result too: one row with the reason, and ever
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
@@ -42,6 +43,7 @@ if TYPE_CHECKING:
     from drystone.settings.model import Inference as InferenceSettings
 
 FEWEST_DF = 4.0
+ROW_NUMBERS = re.compile(r"\b([Rr]ows?) (\d+(?:(?:, | and )\d+)*)")
 Measure = TypeVar("Measure")
 
 
@@ -225,12 +227,16 @@ def _refused(reason: str, rows: pd.DataFrame, ledger: pd.DataFrame) -> Results:
 
 
 def _with_ids(refusal: Refusal, rows: pd.DataFrame) -> str:
-    """Sentence of the refusal with row numbers turned into the review's own row ids."""
-    numbers = refusal.facts.get("rows")
-    if not isinstance(numbers, list | tuple) or not all(isinstance(n, int) for n in numbers):
+    """Sentence of the refusal with the engine's row numbers turned into the review's row ids."""
+    if "rows" not in refusal.facts:
         return refusal.sentence
-    names = [str(rows["row_id"].iloc[number]) for number in numbers[:4] if number < len(rows)]
-    return f"{refusal.sentence} Rows in the sheet: {', '.join(names)}."
+
+    def named(match: re.Match[str]) -> str:
+        numbers = [int(number) for number in re.findall(r"\d+", match[2])]
+        ids = [str(rows["row_id"].iloc[number]) for number in numbers if number < len(rows)]
+        return f"{match[1]} {', '.join(ids)}"
+
+    return ROW_NUMBERS.sub(named, refusal.sentence)
 
 
 def _moderators(slice_path: Path, sampling: pd.DataFrame) -> pd.DataFrame:

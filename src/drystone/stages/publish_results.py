@@ -18,7 +18,7 @@ import pandas as pd
 from drystone.maths.log_ratio import percent_change
 from drystone.stages import collect
 from drystone.stages.draw_figures import figures_folder
-from drystone.stages.swap_folders import NEW, recover, swap
+from drystone.stages.swap_folders import NEW, clear, recover, swap
 from drystone.stages.versions import versions
 from drystone.tables.csv_store import write_csv
 from drystone.tables.store import read_table
@@ -34,11 +34,16 @@ SUMMARY = (
 )
 
 
-def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
-    """Replace ``results/`` and write ``cache/published.json``."""
+def run(root: Path, settings: Settings, intake: Path, run_id: str, inputs: dict[str, str]) -> None:
+    """Replace ``results/`` and write ``cache/published.json``.
+
+    Parameters
+    ----------
+    inputs : SHA-256 of sheet and config as they were read, which may be older than the files
+    """
     recover(root)
     new = root / NEW
-    shutil.rmtree(new, ignore_errors=True)
+    clear(new)
     new.mkdir()
     write_csv(summary_table(root, settings), new / "summary.csv")
     _write_tables(root, settings, intake, new)
@@ -47,7 +52,7 @@ def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
         left_out = shutil.ignore_patterns("list.json")
         folder = figures_folder(root, name)
         shutil.copytree(folder, new / "figures", ignore=left_out, dirs_exist_ok=True)
-    manifest = _manifest(root, settings, new, run_id)
+    manifest = _manifest(new, run_id, inputs)
     (new / "manifest.json").write_text(json.dumps(manifest, indent=1), encoding="utf-8")
     swap(root)
     stamp = root / "cache" / "published.json"
@@ -87,7 +92,8 @@ def _write_tables(root: Path, settings: Settings, intake: Path, target: Path) ->
     write_csv(read_table(check / "findings.parquet"), target / FINDINGS)
     tables = target / "tables"
     write_csv(read_table(check / "findings.parquet"), tables / "findings.csv")
-    write_csv(read_table(check / "derivations.parquet"), tables / "derivations.csv")
+    derivations = collect.whole_derivations(root, settings, intake)
+    write_csv(derivations, tables / "derivations.csv")
     write_csv(collect.whole_ledger(root, settings, intake), tables / "ledger.csv")
     for name in settings.all_analyses():
         folder = collect.analysis_folder(root, name)
@@ -122,17 +128,18 @@ def _over_models(root: Path, settings: Settings, name: str, part: str) -> pd.Dat
     return pd.concat(tables, ignore_index=True)
 
 
-def _manifest(root: Path, settings: Settings, folder: Path, run_id: str) -> dict[str, object]:
+def _manifest(folder: Path, run_id: str, inputs: dict[str, str]) -> dict[str, object]:
+    """Record of the run; ``check/`` is left out, because the check rewrites it by itself."""
     files = sorted(path for path in folder.rglob("*") if path.is_file())
-    sheet = root / settings.sheet
-    inputs = [sheet] if sheet.is_file() else sorted(sheet.glob("*.csv"))
-    config = root / "config" / "config.yaml"
+    names = {path.relative_to(folder).as_posix(): path for path in files}
     return {
         "run": run_id,
         "published": datetime.now(UTC).isoformat(timespec="seconds"),
         "versions": versions(),
-        "inputs": {path.name: _sha256(path) for path in [*inputs, config] if path.is_file()},
-        "files": {path.relative_to(folder).as_posix(): _sha256(path) for path in files},
+        "inputs": inputs,
+        "files": {
+            name: _sha256(path) for name, path in names.items() if not name.startswith("check/")
+        },
     }
 
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -11,6 +10,7 @@ from drystone.report.page import render_page
 from drystone.stages import collect
 from drystone.stages.intake_store import load_table
 from drystone.stages.versions import versions
+from drystone.tables.atomic import write_text
 from drystone.tables.store import read_table
 
 if TYPE_CHECKING:
@@ -19,9 +19,8 @@ if TYPE_CHECKING:
 
 def run(root: Path, settings: Settings, intake: Path, run_id: str) -> None:
     """Write ``cache/report/report.html``."""
-    target = root / "cache" / "report"
-    target.mkdir(parents=True, exist_ok=True)
-    _replace(target / "report.html", render_page(gather(root, settings, intake, run_id)))
+    page = render_page(gather(root, settings, intake, run_id))
+    write_text(root / "cache" / "report" / "report.html", page)
 
 
 def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.ReportFacts:
@@ -34,7 +33,7 @@ def gather(root: Path, settings: Settings, intake: Path, run_id: str) -> shown.R
         flow=shown.Flow(len(rows), int(rows["study"].nunique())),
         findings=load_table(intake, "findings"),
         ledger=collect.whole_ledger(root, settings, intake),
-        derivations=load_table(intake, "derivations"),
+        derivations=collect.whole_derivations(root, settings, intake),
         studies=load_table(intake, "studies"),
         analyses=tuple(
             analysis_facts(root, settings, intake, name, analysis)
@@ -80,12 +79,3 @@ def _strategy(
         averages=read_table(folder / "averages.parquet"),
         models=tuple(models),
     )
-
-
-def _replace(path: Path, text: str) -> None:
-    partial = path.with_name(f".{path.name}.{os.getpid()}.part")
-    try:
-        partial.write_text(text, encoding="utf-8")
-        os.replace(partial, path)
-    finally:
-        partial.unlink(missing_ok=True)

@@ -16,37 +16,42 @@ import pandera.pandas as pa
 from drystone.stages.intake_store import load_table
 from drystone.stages.ledger import ledger_rows
 from drystone.stages.select_rows import extra_columns, usable_rows
-from drystone.tables.check import LEDGER
+from drystone.tables.check import DERIVATIONS, LEDGER
 from drystone.tables.effects import SLICE, SLICE_COLUMNS
-from drystone.tables.store import write_table
+from drystone.tables.store import conform, write_table
 from drystone.words.arms import ARMS, CONTROL, TREATMENT
 
 if TYPE_CHECKING:
     from drystone.settings.model import Analysis, Outcome
 
 
-def run(
-    intake: Path, analysis: Analysis, outcomes: dict[str, Outcome], target: Path, ledger: Path
-) -> None:
-    """Write the slice to ``target`` and the rows that its filters leave out to ``ledger``."""
+def run(intake: Path, analysis: Analysis, outcomes: dict[str, Outcome], target: Path) -> None:
+    """Write slice, ledger and derivations to the folder ``target``.
+
+    The ledger holds the rows that the filters leave out and those that repeat a comparison, the
+    derivations every borrowed SD.
+    """
     rows = usable_rows(load_table(intake, "rows"), load_table(intake, "ledger"), analysis)
-    kept, left = apply_filters(rows, analysis)
-    table = settle_arms(kept)
+    kept, filtered = apply_filters(rows, analysis)
+    table, repeated = without_repeats(settle_arms(kept))
+    left = conform(pd.concat([filtered, repeated], ignore_index=True), LEDGER)
     table["flip"] = table["outcome"].map({name: item.flip_sign for name, item in outcomes.items()})
     table["flip"] = table["flip"].astype(bool)
     extra = [name for name in extra_columns(analysis) if name not in SLICE_COLUMNS]
-    write_table(table[list(SLICE_COLUMNS) + extra], target, _with_extra(extra))
-    write_table(left, ledger, LEDGER)
+    chosen = table[list(SLICE_COLUMNS) + extra]
+    write_table(chosen, target / "slice.parquet", _with_extra(extra))
+    write_table(left, target / "ledger.parquet", LEDGER)
+    write_table(borrowed_sds(table), target / "derivations.parquet", DERIVATIONS)
 
 
 def apply_filters(rows: pd.DataFrame, analysis: Analysis) -> tuple[pd.DataFrame, pd.DataFrame]:
     """Split ``rows`` into those that pass the equality filters and ledger entries of the rest."""
     reasons = pd.Series("", index=rows.index, dtype=object)
     for column, allowed in analysis.where.items():
-        out = ~_as_text(rows[column]).isin(allowed) & (reasons == "")
+        out = ~as_text(rows[column]).isin(allowed) & (reasons == "")
         reasons[out] = f"{column} is not {_either(allowed)}"
     for column, refused in analysis.where_not.items():
-        out = _as_text(rows[column]).isin(refused) & (reasons == "")
+        out = as_text(rows[column]).isin(refused) & (reasons == "")
         reasons[out] = f"{column} is {_either(refused)}"
     out = reasons != ""
     left = ledger_rows(rows[out], "filtered out", reasons[out])
@@ -69,6 +74,45 @@ def settle_arms(rows: pd.DataFrame) -> pd.DataFrame:
         table[f"{role}_sd_source"] = part["source"]
         table[f"{role}_sd_pooled"] = part["pooled"].astype(bool)
     return table
+
+
+def without_repeats(table: pd.DataFrame) -> tuple[pd.DataFrame, pd.DataFrame]:
+    """Split into the first row of every pair of arms and ledger entries of its repeats.
+
+    Two rows with the same two physical arms are one comparison, also when it is turned round.
+    Together they would make the sampling covariance singular and drive the row variance to zero.
+    """
+    sides = zip(table["control_arm"], table["treatment_arm"], strict=True)
+    pairs = pd.Series(["\n".join(sorted(pair)) for pair in sides], index=table.index, dtype=object)
+    again = pairs.duplicated()
+    first = table["row_id"].groupby(pairs).transform("first")
+    reasons = "row " + first[again].astype(object) + " has the same two arms"
+    left = ledger_rows(table[again], "same comparison twice", reasons)
+    return table[~again].reset_index(drop=True), left
+
+
+def borrowed_sds(table: pd.DataFrame) -> pd.DataFrame:
+    """Derivation of every SD that was read from another row of the same physical arm."""
+    donors: dict[str, str] = {}
+    for role in ARMS:
+        own = table[table[f"{role}_sd_source"] == "own"]
+        donors = dict(zip(own[f"{role}_arm"], own["row_id"], strict=True)) | donors
+    found = []
+    for role in ARMS:
+        for row in table[table[f"{role}_sd_source"] == "other row"].to_dict("records"):
+            arm, sd = row[f"{role}_arm"], row[f"{role}_sd"]
+            found.append(
+                {
+                    "row_id": row["row_id"],
+                    "study": row["study"],
+                    "arm": role,
+                    "sd": sd,
+                    "rule": "read from another row",
+                    "inputs": f"SD {sd:g} of row {donors[arm]}",
+                    "assumptions": "both rows name this arm, with the same mean and n",
+                }
+            )
+    return conform(pd.DataFrame(found, columns=list(DERIVATIONS.columns)), DERIVATIONS)
 
 
 def _long(rows: pd.DataFrame) -> pd.DataFrame:
@@ -125,7 +169,8 @@ def _with_extra(extra: list[str]) -> pa.DataFrameSchema:
     return SLICE.add_columns({name: pa.Column(None, nullable=True) for name in extra})
 
 
-def _as_text(column: pd.Series) -> pd.Series:
+def as_text(column: pd.Series) -> pd.Series:
+    """Values as a filter of the config names them: numbers without idle zeros, blank as ''."""
     if pd.api.types.is_numeric_dtype(column.dtype):
         return column.map(lambda value: "" if pd.isna(value) else f"{value:g}")
     return column.astype(object).where(column.notna(), "")

@@ -19,7 +19,15 @@ def swap(root: Path) -> None:
     if results.exists():
         os.replace(results, old)
     os.replace(root / NEW, results)
-    shutil.rmtree(old, ignore_errors=True)
+    clear(old)
+
+
+def clear(path: Path) -> None:
+    """Remove a file or folder, or nothing."""
+    if path.is_dir() and not path.is_symlink():
+        shutil.rmtree(path, ignore_errors=True)
+    else:
+        path.unlink(missing_ok=True)
 
 
 def recover(root: Path) -> bool:
@@ -27,8 +35,8 @@ def recover(root: Path) -> bool:
     results, old = root / "results", root / OLD
     if not old.exists():
         return False
-    if results.exists():
-        shutil.rmtree(old, ignore_errors=True)
+    if results.exists() or not old.is_dir():
+        clear(old)
         return False
     os.replace(old, results)
     return True

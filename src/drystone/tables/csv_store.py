@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 
 import pandas as pd
+
+from drystone.tables.atomic import replacing
 
 DANGEROUS = ("=", "+", "-", "@", "\t", "\r", "\n")
 
@@ -33,10 +34,5 @@ def neutralised(table: pd.DataFrame) -> pd.DataFrame:
 
 def write_csv(table: pd.DataFrame, path: Path) -> None:
     """Write ``table`` as UTF-8 CSV in one move; numbers keep all their digits."""
-    path.parent.mkdir(parents=True, exist_ok=True)
-    partial = path.with_name(f".{path.name}.{os.getpid()}.part")
-    try:
+    with replacing(path) as partial:
         neutralised(table).to_csv(partial, index=False, encoding="utf-8", lineterminator="\n")
-        os.replace(partial, path)
-    finally:
-        partial.unlink(missing_ok=True)

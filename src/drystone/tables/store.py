@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 
 import pandas as pd
 import pandera.pandas as pa
 import pyarrow as arrow
 import pyarrow.parquet as parquet
+
+from drystone.tables.atomic import replacing
 
 
 class TableError(ValueError):
@@ -25,13 +26,8 @@ def write_table(table: pd.DataFrame, path: Path, schema: pa.DataFrameSchema | No
     """
     checked = conform(table, schema) if schema is not None else table
     stored = arrow.Table.from_pandas(checked, preserve_index=False).replace_schema_metadata(None)
-    path.parent.mkdir(parents=True, exist_ok=True)
-    partial = path.with_name(f".{path.name}.{os.getpid()}.part")
-    try:
+    with replacing(path) as partial:
         parquet.write_table(stored, partial, compression="zstd")
-        os.replace(partial, path)
-    finally:
-        partial.unlink(missing_ok=True)
 
 
 def read_table(path: Path, schema: pa.DataFrameSchema | None = None) -> pd.DataFrame:

@@ -66,11 +66,19 @@ def test_no_more_rows_than_coefficients():
     assert _refused(lambda: prepare(problem)).reason == "too_few_rows"
 
 
+def test_one_row_is_said_in_the_singular():
+    one = {"y": Y[:1], "X": np.ones((1, 1)), "study": STUDY[:1]}
+    problem = _problem(**one, known=KnownCovariance(np.full(1, 0.04)), terms=("row",))
+    refusal = _refused(lambda: prepare(problem))
+    assert str(refusal) == "1 row cannot carry 1 coefficient and a variance."
+
+
 def test_no_more_studies_than_coefficients():
     X = np.random.default_rng(1).normal(size=(8, 4))
     refusal = _refused(lambda: prepare(_problem(X=X, coefficient_names=tuple("abcd"))))
     assert refusal.reason == "too_few_studies"
     assert refusal.facts == {"studies": 4, "coefficients": 4}
+    assert "4 studies cannot carry 4 coefficients" in str(refusal)
 
 
 def test_no_t_test_without_degrees_of_freedom():

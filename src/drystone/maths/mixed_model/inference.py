@@ -14,6 +14,7 @@ from drystone.maths.mixed_model.refuse import (
     InvalidProblemError,
     SingularCovarianceError,
     TooFewStudiesError,
+    counted,
 )
 
 
@@ -113,8 +114,8 @@ def model_based(
     df = fit.studies - len(fit.coefficients)
     if df < 1:
         raise TooFewStudiesError(
-            f"{fit.studies} studies leave no degree of freedom beside "
-            f"{len(fit.coefficients)} coefficient(s).",
+            f"With {counted(fit.studies, 'study', 'studies')}, no degree of freedom is left beside "
+            f"{counted(len(fit.coefficients), 'coefficient')}.",
             studies=fit.studies,
             coefficients=len(fit.coefficients),
         )

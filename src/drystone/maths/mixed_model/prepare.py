@@ -21,6 +21,7 @@ from drystone.maths.mixed_model.refuse import (
     SingleStudyError,
     TooFewRowsError,
     TooFewStudiesError,
+    counted,
 )
 from drystone.maths.mixed_model.rotate import Rotation, rotate
 
@@ -168,7 +169,7 @@ def _check_counts(problem: Problem, studies: int) -> None:
     rows, width = problem.X.shape
     if rows <= width:
         raise TooFewRowsError(
-            f"{rows} row(s) cannot carry {width} coefficient(s) and a variance.",
+            f"{counted(rows, 'row')} cannot carry {counted(width, 'coefficient')} and a variance.",
             rows=rows,
             coefficients=width,
         )
@@ -178,7 +179,8 @@ def _check_counts(problem: Problem, studies: int) -> None:
         raise SingleStudyError("There is only one study, so differences between studies are void.")
     if studies <= width:
         raise TooFewStudiesError(
-            f"{studies} studies cannot carry {width} coefficient(s) beside a study level.",
+            f"{counted(studies, 'study', 'studies')} cannot carry "
+            f"{counted(width, 'coefficient')} beside a study level.",
             studies=studies,
             coefficients=width,
         )

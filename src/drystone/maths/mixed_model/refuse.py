@@ -26,6 +26,11 @@ class Refusal(Exception):
         self.facts: dict[str, Any] = facts
 
 
+def counted(number: int, one: str, many: str = "") -> str:
+    """Number with its noun, for a sentence: '1 row', '2 rows', '3 studies'."""
+    return f"{number} {one if number == 1 else many or one + 's'}"
+
+
 class InvalidProblemError(Refusal):
     """Arrays whose shapes or codes do not belong together."""
 

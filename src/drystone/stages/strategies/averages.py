@@ -3,7 +3,8 @@
 An average of one outcome and arm with fewer than ten reporting arms is pooled over the outcomes of
 the analysis, and the table says so. Arms stay apart: pooling them loses what the strategy is for.
 SDs that are one value for both arms stay out of averages by arm; where they are the majority the
-average is over both arms.
+average is over both arms. A physical arm that is the control of some rows and the treatment of
+others has one role here, that of more rows, so that it has one CV in every row.
 """
 
 from __future__ import annotations
@@ -15,11 +16,17 @@ import numpy as np
 import pandas as pd
 
 from drystone.maths import average_variation as variation
-from drystone.stages.strategies.filled import NothingReported
+from drystone.stages.strategies.filled import (
+    Filled,
+    NothingReported,
+    no_ledger,
+    only_complete,
+    with_cv2,
+)
 from drystone.tables.effects import AVERAGES
 from drystone.tables.store import conform
 from drystone.words import strategies
-from drystone.words.arms import ARMS
+from drystone.words.arms import ARMS, CONTROL, TREATMENT
 
 if TYPE_CHECKING:
     from drystone.settings.model import Strategy
@@ -34,13 +41,16 @@ class Averages:
 
     values: dict[tuple[str, str], float]
     table: pd.DataFrame
+    roles: dict[str, str]
 
     def by_row(self, rows: pd.DataFrame) -> dict[str, np.ndarray]:
-        """Plugged-in squared CV of each arm, (k,) each."""
-        return {
-            arm: np.array([self.values[outcome, arm] for outcome in rows["outcome"]], dtype=float)
-            for arm in ARMS
-        }
+        """Plugged-in squared CV of each arm, (k,) each; equal wherever the physical arm is."""
+        found = {}
+        for side in ARMS:
+            pairs = zip(rows["outcome"], rows[f"{side}_arm"], strict=True)
+            values = [self.values[outcome, self.roles[arm]] for outcome, arm in pairs]
+            found[side] = np.array(values, dtype=float)
+        return found
 
 
 def average_cv(rows: pd.DataFrame, strategy: Strategy) -> Averages:
@@ -67,11 +77,35 @@ def average_cv(rows: pd.DataFrame, strategy: Strategy) -> Averages:
                 shown[key] = _versions(chosen, strategy.average_cv)
             used = shown[key].loc[shown[key]["used"], "cv2"]
             values[outcome, arm] = float(used.iloc[0])
-    return Averages(values, conform(pd.concat(shown.values(), ignore_index=True), AVERAGES))
+    table = conform(pd.concat(shown.values(), ignore_index=True), AVERAGES)
+    return Averages(values, table, arm_roles(rows))
+
+
+def plug_in(rows: pd.DataFrame, strategy: Strategy, everywhere: bool) -> Filled:
+    """Rows with the average squared CV where an arm reports no SD, or everywhere.
+
+    Raises
+    ------
+    NothingReported
+        When no arm of the slice reports an SD.
+    """
+    averages = average_cv(rows, strategy)
+    few = strategy.rows == strategies.COMPLETE_ROWS
+    kept, left = only_complete(rows) if few else (rows, no_ledger())
+    return Filled(with_cv2(kept, averages.by_row(kept), everywhere), left, averages.table)
+
+
+def arm_roles(rows: pd.DataFrame) -> dict[str, str]:
+    """Role of every physical arm: that in which it stands in more rows, control when equal."""
+    counts = {role: rows[f"{role}_arm"].value_counts() for role in ARMS}
+    treatment = counts[TREATMENT]
+    control = counts[CONTROL].reindex(treatment.index, fill_value=0)
+    roles = dict.fromkeys(rows[f"{CONTROL}_arm"], CONTROL)
+    return roles | {str(arm): TREATMENT for arm in treatment.index[treatment > control]}
 
 
 def reporting_arms(rows: pd.DataFrame) -> pd.DataFrame:
-    """Physical arms with an SD, each once in each role: outcome, role, arm, cv, n, pooled."""
+    """Physical arms with an SD, each once, in its role: outcome, role, arm, cv, n, pooled."""
     parts = [
         pd.DataFrame(
             {
@@ -87,7 +121,8 @@ def reporting_arms(rows: pd.DataFrame) -> pd.DataFrame:
     ]
     arms = pd.concat(parts, ignore_index=True)
     arms = arms[arms["cv"].notna() & (arms["cv"] > 0)]
-    return arms.drop_duplicates(["role", "arm"]).sort_values(["role", "arm"], ignore_index=True)
+    arms["role"] = arms["arm"].map(arm_roles(rows))
+    return arms.drop_duplicates("arm").sort_values(["role", "arm"], ignore_index=True)
 
 
 @dataclass(frozen=True)
@@ -105,15 +140,11 @@ def _choose(arms: pd.DataFrame, outcome: str, arm: str) -> _Chosen:
     enough = len(own) >= variation.FEWEST_ARMS
     if enough or (len(own) and of_arm["outcome"].nunique() == 1):
         few = "" if enough else f"only {len(own)} arms report, and there is nothing to pool with"
-        return _Chosen(outcome, arm, _once(own), few)
+        return _Chosen(outcome, arm, own, few)
     few = f"only {len(own)} arms of {outcome} report"
     if len(of_arm):
-        return _Chosen(ALL_OUTCOMES, arm, _once(of_arm), few)
-    return _Chosen(ALL_OUTCOMES, BOTH, _once(arms), f"no {arm} arm reports")
-
-
-def _once(arms: pd.DataFrame) -> pd.DataFrame:
-    return arms.drop_duplicates("arm")
+        return _Chosen(ALL_OUTCOMES, arm, of_arm, few)
+    return _Chosen(ALL_OUTCOMES, BOTH, arms, f"no {arm} arm reports")
 
 
 def _pooled_majority(arms: pd.DataFrame) -> bool:

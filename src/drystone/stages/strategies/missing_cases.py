@@ -11,8 +11,8 @@ from typing import TYPE_CHECKING
 
 import pandas as pd
 
-from drystone.stages.strategies.averages import average_cv
-from drystone.stages.strategies.filled import Filled, no_ledger, only_complete, with_cv2
+from drystone.stages.strategies.averages import plug_in
+from drystone.stages.strategies.filled import Filled
 
 if TYPE_CHECKING:
     from drystone.settings.model import Strategy
@@ -26,6 +26,4 @@ def fill(rows: pd.DataFrame, strategy: Strategy) -> Filled:
     NothingReported
         When no arm of the slice reports an SD.
     """
-    averages = average_cv(rows, strategy)
-    kept, left = only_complete(rows) if strategy.rows == "complete" else (rows, no_ledger())
-    return Filled(with_cv2(kept, averages.by_row(kept), average=False), left, averages.table)
+    return plug_in(rows, strategy, everywhere=False)
