@@ -83,6 +83,26 @@ def check(folder: Path) -> None:
 
 
 @cli.command()
+@click.argument("folder", type=FOLDER)
+@click.argument("row")
+@click.argument("rule")
+@click.argument("decision")
+@click.option("--reason", required=True, help="Why; it stands in the accepted list or the ledger.")
+@click.option("--who", default="", help="Who decided.")
+def answer(folder: Path, row: str, rule: str, decision: str, reason: str, who: str) -> None:
+    """Answer the finding RULE of ROW (its row_id; * for every such row) in answers.csv.
+
+    DECISION is 'accept' (an ask or warn was looked at, its stated default holds) or 'leave out'
+    (the row leaves). When the numbers of the row change, the finding is asked again.
+    """
+    from drystone.driving.answering import Decision
+    from drystone.driving.answering import answer as write
+
+    rows = write(folder, Decision(row, rule, decision, reason, who))
+    click.echo(f"{len(rows)} answer{'s' if len(rows) > 1 else ''} in {folder / 'answers.csv'}.")
+
+
+@cli.command()
 @click.argument("folder", type=FOLDER, default=Path())
 @click.option("--cores", type=click.IntRange(1), default=2, show_default=True)
 @click.option("--strict", is_flag=True, help="Do not run while a row has a finding of level stop.")

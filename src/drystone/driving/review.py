@@ -27,6 +27,16 @@ class Review:
         return self.root / "cache"
 
     @property
+    def answers(self) -> Path:
+        """What people decided about findings; may be absent."""
+        return self.root / "answers.csv"
+
+    @property
+    def bound_answers(self) -> Path:
+        """Digests of the rows that lines without one were about when they were first read."""
+        return self.cache / "answers.json"
+
+    @property
     def results(self) -> Path:
         """Folder that people read."""
         return self.root / "results"

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 import numpy.typing as npt
@@ -14,10 +14,19 @@ from drystone.sheet.notes import Note
 from drystone.sheet.raw import RawSheet, RawTable, show
 from drystone.tables.comparisons import NUMBER_COLUMNS
 
+if TYPE_CHECKING:
+    from drystone.sheet.answers import Answers
+
 Floats = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
 Texts = npt.NDArray[np.object_]  # str, or None when missing
 Words = str | Sequence[str] | Callable[[int], str]
+
+
+def _no_answers() -> Answers:
+    from drystone.sheet.answers import Answers
+
+    return Answers()
 
 
 @dataclass
@@ -36,6 +45,8 @@ class Draft:
     sd_rules : by arm, where that SD came from, blank when none
     derivations : records for the derivations table
     studies : the studies table, typed; by column
+    answers : what people decided about findings
+    row_digests : of the rows that an answer is about, as typed
     """
 
     raw: RawSheet
@@ -50,6 +61,8 @@ class Draft:
     sd_rules: dict[str, Texts] = field(default_factory=dict)
     derivations: list[dict[str, Any]] = field(default_factory=list)
     studies: dict[str, list[Any]] = field(default_factory=dict)
+    answers: Answers = field(default_factory=_no_answers)
+    row_digests: dict[int, str] = field(default_factory=dict)
 
     @property
     def table(self) -> RawTable:
