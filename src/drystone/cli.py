@@ -82,6 +82,35 @@ def check(folder: Path) -> None:
     sys.exit(STOPS if stops else 0)
 
 
+@cli.command("compare-extractions")
+@click.argument("a", type=FOLDER)
+@click.argument("b", type=FOLDER)
+@click.option("--config", type=FOLDER, help="Config (or review folder) that both sheets follow.")
+@click.option(
+    "--tolerance",
+    type=click.FloatRange(0, 1),
+    default=1e-6,
+    show_default=True,
+    help="Relative difference of two numbers that counts as none.",
+)
+@click.option(
+    "--to",
+    type=FOLDER,
+    default=Path("extraction-comparison"),
+    show_default=True,
+    help="Folder for disagreements.csv and agreement.csv.",
+)
+def compare_extractions(a: Path, b: Path, config: Path | None, tolerance: float, to: Path) -> None:
+    """Compare two extractions A and B of the same papers, cell by cell.
+
+    A and B are sheets or review folders. Resolutions typed into disagreements.csv are kept.
+    """
+    from drystone.driving.comparing import Options, compare
+
+    differ = compare(a, b, Options(config, tolerance, to), click.echo)
+    sys.exit(STOPS if differ else 0)
+
+
 @cli.command()
 @click.argument("folder", type=FOLDER)
 @click.argument("row")

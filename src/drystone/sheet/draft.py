@@ -47,6 +47,7 @@ class Draft:
     studies : the studies table, typed; by column
     answers : what people decided about findings
     row_digests : of the rows that an answer is about, as typed
+    unnamed : entries whose row_id is a temporary name
     """
 
     raw: RawSheet
@@ -63,6 +64,7 @@ class Draft:
     studies: dict[str, list[Any]] = field(default_factory=dict)
     answers: Answers = field(default_factory=_no_answers)
     row_digests: dict[int, str] = field(default_factory=dict)
+    unnamed: set[int] = field(default_factory=set)
 
     @property
     def table(self) -> RawTable:

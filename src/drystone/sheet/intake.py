@@ -40,6 +40,7 @@ class Intake:
         in the ledger, once
     columns : where each of our columns stands: letter and header as typed
     moderators : names of the sheet's other columns
+    unnamed : places of rows whose row_id is a temporary name
     """
 
     rows: pd.DataFrame
@@ -50,6 +51,7 @@ class Intake:
     derivations: pd.DataFrame
     columns: dict[str, tuple[str, str]]
     moderators: tuple[str, ...]
+    unnamed: frozenset[int] = frozenset()
 
     @property
     def usable(self) -> pd.DataFrame:
@@ -91,6 +93,7 @@ def take_in(raw: RawSheet, settings: Settings, answers: Answers | None = None) -
             for name, place in places.items()
         },
         moderators=tuple(draft.extras),
+        unnamed=frozenset(draft.unnamed),
     )
 
 
