@@ -28,6 +28,12 @@ def test_figure_of_rows_shows_the_rows_of_the_main_strategy() -> None:
     assert sorted(value["estimate"] for value in values) == sorted(sampling["effect"])
 
 
+def test_bars_of_studies_and_rows_say_how_far_they_reach() -> None:
+    specs = figure_specs(invented_facts(12))
+    for kind in ("studies", "rows"):
+        assert "bar: 1.96 SE" in specs[f"beetles {kind}"]["title"]  # normal quantile at 0.975
+
+
 def test_specifications_are_plain_and_fetch_nothing() -> None:
     for spec in figure_specs(invented_facts(40, hostile=True)).values():
         text = json.dumps(spec, allow_nan=False)

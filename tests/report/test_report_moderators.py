@@ -117,6 +117,21 @@ def test_captions_name_the_reference_and_how_to_read() -> None:
     assert [row[2] for row in texts(second)] == ["refused"] * 4  # under complete cases
 
 
+def test_an_interaction_says_where_its_main_terms_hold() -> None:
+    facts = invented_facts(130)
+    analysis = facts.analyses[0]
+    assert moderators.WITH_INTERACTION not in tables(facts, analysis)[0].caption
+    main = analysis.strategy("all cases")
+    assert main is not None
+    model = main.models[1]
+    table = pd.concat([model.coefficients, model.coefficients.tail(1)], ignore_index=True)
+    table.loc[len(table) - 1, "coefficient"] = "path = sand x age"
+    crossed = replace(main, models=(replace(model, formula="~ path * age", coefficients=table),))
+    first = next(moderators.moderator_tables(facts, analysis, crossed))
+    assert moderators.WITH_INTERACTION in first.caption
+    assert texts(first)[-1][1] == terms.INTERACTION
+
+
 def test_few_degrees_of_freedom_are_marked_in_the_table() -> None:
     facts = invented_facts(130)
     first = tables(facts, with_coefficients(facts.analyses[0], df=2.5))[0]

@@ -134,3 +134,39 @@ def test_refusal_names_rows_by_their_ids():
     refused = fit_rows(rows, pairs, "~ 1", ANALYSIS, Inference()).coefficients["refused"].iloc[0]
     assert "r0" in refused
     assert "Rows 0" not in refused
+
+
+def test_strategy_without_rows_gives_the_ledgers_reason(tmp_path):
+    """No arm reports an SD: the refusal says this, not just that no row is left."""
+    from drystone.settings.model import Strategy
+    from drystone.stages import fill_spreads, fit_model
+    from drystone.stages.slice_rows import settle_arms
+    from drystone.tables.store import read_table, write_table
+
+    count = 4
+    rows = settle_arms(
+        pd.DataFrame(
+            {
+                "row_id": [f"r{number}" for number in range(count)],
+                "study": [f"Place {number // 2}" for number in range(count)],
+                "outcome": "cover",
+                "date": None,
+                "control_id": None,
+                "treatment_id": None,
+                "control_mean": 10.0,
+                "control_sd_value": np.nan,
+                "control_n": 5.0,
+                "treatment_mean": 12.0,
+                "treatment_sd_value": np.nan,
+                "treatment_n": 5.0,
+                "sd_pooled": False,
+            }
+        )
+    ).assign(flip=False)
+    write_table(rows, tmp_path / "slice.parquet")
+    strategy = Strategy(name="all cases", use="all cases")
+    fill_spreads.run(tmp_path / "slice.parquet", ANALYSIS, strategy, tmp_path)
+    where = (tmp_path / "slice.parquet", tmp_path)
+    fit_model.run(*where, "~ 1", ANALYSIS, Inference(), tmp_path / "fit")
+    refused = read_table(tmp_path / "fit/coefficients.parquet")["refused"].iloc[0]
+    assert refused == "no arm of this analysis reports an SD, so there is no average CV"

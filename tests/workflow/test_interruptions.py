@@ -78,7 +78,7 @@ def test_kill_nine_of_the_worker(good, tmp_path):
 
 def _wait_for_child(pid: int) -> int:
     path = Path(f"/proc/{pid}/task/{pid}/children")
-    for _ in range(400):
+    for _ in range(3000):
         children = path.read_text().split() if path.exists() else []
         if children:
             time.sleep(0.5)
@@ -98,7 +98,7 @@ def test_interrupts_end_with_130_and_the_next_run_completes(good, tmp_path):
             shutil.rmtree(fresh / "cache")
             continue
         process.send_signal(signal.SIGINT)
-        _, said = process.communicate(timeout=30)
+        _, said = process.communicate(timeout=120)
         assert process.returncode in (0, 130), said  # 0 when it had just finished
         assert "Traceback" not in said
     assert _finish(fresh).returncode == 0

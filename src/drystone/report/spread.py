@@ -157,13 +157,24 @@ def _lines(frame: _Frame) -> tuple[SpreadLine, ...]:
     return tuple(lines)
 
 
+MOST_DECADES = 8
+
+
 def _decades(low: float, high: float) -> list[tuple[float, str]]:
     """Round numbers on a log axis: 1, 2, 5 within a narrow range, else powers of ten."""
     steps = (1.0,) if high - low > 3 else (1.0, 3.0) if high - low > 1.2 else (1.0, 2.0, 5.0)
+    every = max(1, round((high - low) / MOST_DECADES))
     found = []
-    for power in range(math.floor(low), math.ceil(high) + 1):
+    for power in range(math.floor(low), math.ceil(high) + 1, every):
         for step in steps:
             at = power + math.log10(step)
             if low <= at <= high:
-                found.append((at, numbers.number(step * 10.0**power, 1)))
+                found.append((at, _decade(step, power)))
     return found
+
+
+def _decade(step: float, power: int) -> str:
+    """Label of step x 10^power; beyond ten digits as a power, which also cannot overflow."""
+    if abs(power) > 9:
+        return f"{step:g}e{power}"
+    return numbers.number(step * 10.0**power, 1)

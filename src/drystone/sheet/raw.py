@@ -93,7 +93,8 @@ def letters(position: int) -> str:
 def show(cell: Cell) -> str:
     """Text of a cell as a person would read it back: 1999, not 1999.0."""
     if isinstance(cell, str):
-        return cell
+        # lone halves of a character cannot be written to any file
+        return cell if cell.isascii() else cell.encode("utf-8", "replace").decode()
     if cell is None:
         return ""
     if isinstance(cell, float):

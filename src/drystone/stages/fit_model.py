@@ -69,7 +69,11 @@ def run(
     sampling = read_table(sampling_folder / "sampling.parquet")
     covariance = read_table(sampling_folder / "covariance.parquet")
     rows = sampling.merge(_moderators(slice_path, sampling), on="row_id", how="left")
-    results = fit_rows(rows, covariance, formula, analysis, inference)
+    if rows.empty:
+        why = _why_empty(read_table(sampling_folder / "ledger.parquet"))
+        results = _refused(why, rows, _no_ledger())
+    else:
+        results = fit_rows(rows, covariance, formula, analysis, inference)
     write_table(results.coefficients, target / "coefficients.parquet", COEFFICIENTS)
     write_table(results.components, target / "components.parquet", COMPONENTS)
     write_table(results.heterogeneity, target / "heterogeneity.parquet", HETEROGENEITY)
@@ -171,7 +175,7 @@ def _warnings(fitted: Fit, main: Inference) -> list[str]:
     few = float(np.min(main.degrees_of_freedom))
     if few < FEWEST_DF:
         found.append(
-            f"Too few studies for a firm interval: {few:.1f} degrees of freedom; below 4 the "
+            f"Too few studies for a firm interval: {few:.2f} degrees of freedom; below 4 the "
             "interval and the p value are rough."
         )
     for name in fitted.components:
@@ -213,6 +217,12 @@ def _or_none(measure: Callable[..., Measure], *given: Prepared | Fit) -> Measure
         return measure(*given)
     except Refusal:
         return None
+
+
+def _why_empty(ledger: pd.DataFrame) -> str:
+    """Why a strategy has no row: the ledger's reason when it is one for all."""
+    reasons = ledger["reason"].unique()
+    return str(reasons[0]) if len(reasons) == 1 else "no row is left under this strategy"
 
 
 def _refused(reason: str, rows: pd.DataFrame, ledger: pd.DataFrame) -> Results:
