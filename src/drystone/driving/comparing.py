@@ -67,7 +67,7 @@ def _intake(path: Path, config: Path | None) -> Intake:
     from drystone.sheet.guess.proposal import propose
     from drystone.sheet.intake import take_in
     from drystone.sheet.readers import read_sheet
-    from drystone.sheet.sources import read_sources
+    from drystone.sheet.sources import raw_sheet, read_sources
 
     if is_review(path) and config is None:
         review = open_review(path)
@@ -75,12 +75,12 @@ def _intake(path: Path, config: Path | None) -> Intake:
     else:
         sheet = open_review(path).sheet_path() if is_review(path) else path
         if config is None:
-            proposal = propose(read_sources(sheet), sheet.name).settings(str(sheet))
-            settings = settings_from(proposal, f"the layout guessed for {sheet.name}")
-        elif config.is_dir():
-            settings = load_settings_relative(config)
-        else:
-            settings = load_settings(config)
+            sources = read_sources(sheet)
+            proposal = propose(sources, sheet.name)
+            content, name = proposal.settings(str(sheet)), f"the layout guessed for {sheet.name}"
+            raw = raw_sheet(sources, proposal.layout, sheet.name)
+            return take_in(raw, settings_from(content, name))
+        settings = load_settings_relative(config) if config.is_dir() else load_settings(config)
     return take_in(read_sheet(sheet, settings.columns, settings.layout), settings)
 
 

@@ -11,7 +11,7 @@ from drystone.driving.folders import start_from
 from drystone.sheet.guess.config_text import config_text
 from drystone.sheet.guess.proposal import Proposal, propose
 from drystone.sheet.guess.screen import ROWS, finding_lines, guess_lines
-from drystone.sheet.sources import read_sources
+from drystone.sheet.sources import raw_sheet, read_sources
 from drystone.words.levels import STOP
 
 WRITABLE = 0o222  # a folder that nobody may write to is left alone even by those who could
@@ -32,11 +32,11 @@ def check_sheet(path: Path, say: Callable[[str], None]) -> bool:
     from drystone.settings.load import settings_from
     from drystone.sheet.intake import take_in
     from drystone.sheet.present import collapse, findings_csv
-    from drystone.sheet.readers import read_sheet
 
-    proposal = propose(read_sources(path), path.name)
+    sources = read_sources(path)
+    proposal = propose(sources, path.name)
     settings = settings_from(proposal.settings(str(path)), f"the layout guessed for {path.name}")
-    intake = take_in(read_sheet(path, settings.columns, settings.layout), settings)
+    intake = take_in(raw_sheet(sources, proposal.layout, path.name), settings)
     head = guess_lines(proposal, path.name)
     target = _write(lambda place: findings_csv(intake.findings, place), path)
     left = intake.ledger["sheet_row"].nunique()

@@ -36,7 +36,7 @@ def read_workbook(path: Path, columns: Mapping[str, str], layout: Layout) -> Raw
         broken = inspection.broken.get(name, {})
         comparisons, remarks = laid_out_table(name, grids[name], broken, str(path), layout)
     studies = next((name for name in tables if name.strip().casefold() == "studies"), None)
-    remarks = _macros(inspection) + remarks
+    remarks = macros(inspection) + remarks
     if studies is None or studies == comparisons.name:
         return RawSheet(path.name, comparisons, None, tuple(remarks))
     table, more = tables[studies]
@@ -114,7 +114,8 @@ def _choose(tables: Mapping[str, Found], columns: Mapping[str, str], file: str) 
     )
 
 
-def _macros(inspection: Inspection) -> list[Note]:
+def macros(inspection: Inspection) -> list[Note]:
+    """Remark about macros, when the workbook holds any."""
     if not inspection.macros:
         return []
     return [

@@ -12,7 +12,7 @@ from drystone.sheet.guess.screen import WIDTH, finding_lines, guess_lines
 from drystone.sheet.intake import take_in
 from drystone.sheet.laid_out import join_lines
 from drystone.sheet.present import Line
-from drystone.sheet.sources import Source, read_sources
+from drystone.sheet.sources import Source, raw_sheet, read_sources
 
 FLAT = ["study", "C_mean", "C_sd", "C_n", "T_mean", "T_sd", "T_n"]
 THREE = ["mean", "SD", "n"]
@@ -94,6 +94,19 @@ def test_repeated_headers_are_told_apart_by_their_letters(tmp_path):
     assert proposal.moderators == ("crop (column H)", "crop (column I)")
     assert list(intake.rows["crop (column I)"]) == ["rye"] * 4
     assert "repeated header" in set(intake.findings["rule"])
+
+
+def test_reading_once_gives_what_the_config_gives(tmp_path):
+    book = {"x": [["a", "b"]], "rows": [[], FLAT, *NUMBERS], "studies": [["study"], ["Alder 2001"]]}
+    paths = [save_xlsx(tmp_path / "a.xlsx", book)]
+    paths.append(write(tmp_path / "b.csv", [[*FLAT, ""], *([*row, "x"] for row in NUMBERS)], ";"))
+    (tmp_path / "c").mkdir()
+    paths.append(tmp_path / "c")
+    write(paths[2] / "rows.csv", [FLAT, *NUMBERS])
+    write(paths[2] / "studies.csv", [["study"], ["Birch & Moss 2004"]], encoding="cp1252")
+    for path in paths:
+        sources = read_sources(path)
+        assert raw_sheet(sources, propose(sources, "x").layout, path.name) == of_file(path)[1]
 
 
 def test_the_sheet_with_both_arms_is_chosen_among_others(tmp_path):
