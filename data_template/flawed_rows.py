@@ -69,9 +69,9 @@ def _spread_edits(rows: Mapping[str, Row]) -> list[Flaw]:
     turned = [
         Flaw(
             row_id,
-            "control_spread",
+            "control_mean",
             "E1" if row_id.endswith("3") else "",
-            "CV far out",
+            "normal approximation",
             "SDs of the paper stand as spreads of kind SE in this row and the two before",
             {
                 f"{arm}_spread": round(
@@ -79,7 +79,7 @@ def _spread_edits(rows: Mapping[str, Row]) -> list[Flaw]:
                 )
                 for arm in ("control", "treatment")
             },
-            ("normal approximation",),
+            ("CV far out",),
         )
         for row_id in (f"winter-pasture-2010-{number}" for number in (1, 2, 3))
     ]
@@ -138,9 +138,9 @@ def _spread_edits(rows: Mapping[str, Row]) -> list[Flaw]:
             "swarth-gill-2003-1",
             "control_q1",
             "E20",
-            "spread not converted",
-            "quartiles without a kind",
-            {"control_q1": 4.4, "control_q3": 6.4},
+            "IQR not used",
+            "quartiles beyond the typed mean: the arm is skewed",
+            {"control_q1": 5.7, "control_q3": 8.1},
         ),
         Flaw(
             "smoot-hole-2014-2",

@@ -38,26 +38,97 @@ def demo(folder: Path, cores: int) -> None:
 
 @cli.command()
 @click.argument("folder", type=FOLDER)
-def start(folder: Path) -> None:
-    """Write an empty review into FOLDER: config, workbook, and what plain snakemake needs."""
+@click.option("--sheet", type=FOLDER, help="The team's own sheet: copied, its layout guessed.")
+def start(folder: Path, sheet: Path | None) -> None:
+    """Write a review into FOLDER: config, workbook, and what plain snakemake needs.
+
+    With --sheet, the config is a proposal: every guess a line with its reason, easy to correct.
+    """
     from drystone.driving import folders
 
-    folders.start(folder)
+    config = folder / "config" / "config.yaml"
+    if sheet is None:
+        folders.start(folder)
+        steps = [f"name your outcomes in {config}"]
+        steps.append(f"type your comparisons into {folder / 'data' / 'extraction.xlsx'}")
+    else:
+        from drystone.driving.own_layout import start_with_sheet
+
+        steps = [f"decide: {ask}" for ask in start_with_sheet(folder, sheet).asks]
+        steps.append(f"read the guesses in {config} and correct them")
     click.echo(f"A review folder stands in {folder}. Now:")
-    click.echo(f"  1. name your outcomes in {folder / 'config' / 'config.yaml'}")
-    click.echo(f"  2. type your comparisons into {folder / 'data' / 'extraction.xlsx'}")
-    click.echo(f"  3. drystone check {folder}")
-    click.echo(f"  4. drystone run {folder}")
+    for number, step in enumerate([*steps, f"drystone check {folder}", f"drystone run {folder}"]):
+        click.echo(f"  {number + 1}. {step}")
 
 
 @cli.command()
 @click.argument("folder", type=FOLDER, default=Path())
 def check(folder: Path) -> None:
-    """Read the sheet of the review in FOLDER, list what is wrong, mark it in a copy."""
-    from drystone.driving.checking import check_review
+    """List what is wrong with the sheet of the review in FOLDER, and mark it in a copy.
 
-    stops = check_review(folder, click.echo)
+    FOLDER may also be a sheet in the team's own layout (a workbook, a CSV file, or a folder of
+    CSV files): then columns, outcomes and units are guessed and shown, and no config is needed.
+    """
+    from drystone.driving.folders import is_bare_sheet
+
+    if is_bare_sheet(folder):
+        from drystone.driving.own_layout import check_sheet
+
+        stops = check_sheet(folder, click.echo)
+    else:
+        from drystone.driving.checking import check_review
+
+        stops = check_review(folder, click.echo)
     sys.exit(STOPS if stops else 0)
+
+
+@cli.command("compare-extractions")
+@click.argument("a", type=FOLDER)
+@click.argument("b", type=FOLDER)
+@click.option("--config", type=FOLDER, help="Config (or review folder) that both sheets follow.")
+@click.option(
+    "--tolerance",
+    type=click.FloatRange(0, 1),
+    default=1e-6,
+    show_default=True,
+    help="Relative difference of two numbers that counts as none.",
+)
+@click.option(
+    "--to",
+    type=FOLDER,
+    default=Path("extraction-comparison"),
+    show_default=True,
+    help="Folder for disagreements.csv and agreement.csv.",
+)
+def compare_extractions(a: Path, b: Path, config: Path | None, tolerance: float, to: Path) -> None:
+    """Compare two extractions A and B of the same papers, cell by cell.
+
+    A and B are sheets or review folders. Resolutions typed into disagreements.csv are kept.
+    """
+    from drystone.driving.comparing import Options, compare
+
+    differ = compare(a, b, Options(config, tolerance, to), click.echo)
+    sys.exit(STOPS if differ else 0)
+
+
+@cli.command()
+@click.argument("folder", type=FOLDER)
+@click.argument("row")
+@click.argument("rule")
+@click.argument("decision")
+@click.option("--reason", required=True, help="Why; it stands in the accepted list or the ledger.")
+@click.option("--who", default="", help="Who decided.")
+def answer(folder: Path, row: str, rule: str, decision: str, reason: str, who: str) -> None:
+    """Answer the finding RULE of ROW (its row_id; * for every such row) in answers.csv.
+
+    DECISION is 'accept' (an ask or warn was looked at, its stated default holds) or 'leave out'
+    (the row leaves). When the numbers of the row change, the finding is asked again.
+    """
+    from drystone.driving.answering import Decision
+    from drystone.driving.answering import answer as write
+
+    rows = write(folder, Decision(row, rule, decision, reason, who))
+    click.echo(f"{len(rows)} answer{'s' if len(rows) > 1 else ''} in {folder / 'answers.csv'}.")
 
 
 @cli.command()

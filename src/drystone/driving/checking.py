@@ -11,6 +11,7 @@ from drystone.driving.session import shown_path
 from drystone.words.levels import STOP
 
 FINDINGS_FILE = Path("results") / "check" / "findings.csv"
+ACCEPTED_FILE = Path("results") / "check" / "accepted.csv"
 
 
 def check_review(folder: Path, say: Callable[[str], None]) -> bool:
@@ -28,11 +29,14 @@ def check_review(folder: Path, say: Callable[[str], None]) -> bool:
     findings = plan.state.table("findings")
     for line in collapse(findings):
         say(str(line))
+    for text in _accepted(plan):
+        say(text)
     for note in idle_filters(plan):
         say(note)
     say(_count(plan))
     target = plan.review.root / FINDINGS_FILE
     findings_csv(findings, target)
+    _write_accepted(plan)
     say(f"All findings with their cells: {shown_path(target)}")
     say(_mark(plan))
     plan.state.remember()
@@ -57,6 +61,27 @@ def _mark(plan: Plan) -> str:
     if made.name != copy_name(sheet):
         said += f" ({copy_name(sheet)} is open in another program, so it was left alone)"
     return said
+
+
+def _write_accepted(plan: Plan) -> None:
+    from drystone.sheet.present import findings_csv
+
+    accepted, target = plan.state.table("accepted"), plan.review.root / ACCEPTED_FILE
+    if len(accepted) or target.exists():
+        findings_csv(accepted, target)
+
+
+def _accepted(plan: Plan) -> list[str]:
+    """One line for the findings of each kind that people accepted, with the first reason."""
+    accepted = plan.state.table("accepted")
+    lines = []
+    for (level, rule), group in accepted.fillna("").groupby(["level", "rule"], sort=False):
+        first = group.iloc[0]
+        times = f", {len(group)} times" if len(group) > 1 else ""
+        by = f" ({first['who']})" if first["who"] else ""
+        reason = first["reason"] or "no reason given"
+        lines.append(f"accepted: {rule} ({level}){times}: {reason}{by}")
+    return lines
 
 
 def _count(plan: Plan) -> str:

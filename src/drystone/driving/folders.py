@@ -46,20 +46,58 @@ def write_demo(folder: Path) -> None:
     shutil.copyfile(template / "README.md", folder / "README.md")
 
 
+def start_from(folder: Path, sheet: Path, name: str, config: str) -> None:
+    """Write a review around a copy of ``sheet`` (a file, or a folder of CSV files).
+
+    Parameters
+    ----------
+    name : what the copy is called in the folder data
+    config : text of the config
+
+    Raises
+    ------
+    FolderTaken
+        When ``folder`` exists and is not empty; nothing is written then.
+    """
+    _prepare(folder)
+    _copy_sheet(sheet, folder / "data" / name)
+    write_text(folder / "config" / "config.yaml", config)
+
+
 def is_review(folder: Path) -> bool:
     """Whether ``folder`` holds a config where a review has it."""
     return (folder / "config" / "config.yaml").is_file()
 
 
+def is_bare_sheet(path: Path) -> bool:
+    """Whether ``path`` is a file, or a folder of CSV files, and not a review folder."""
+    return path.is_file() or (not is_review(path) and any(path.glob("*.csv")))
+
+
+def _copy_sheet(path: Path, target: Path) -> None:
+    if path.is_file():
+        shutil.copyfile(path, target)
+        return
+    target.mkdir()
+    for item in sorted(path.iterdir()):
+        if item.is_file() and item.suffix.lower() == ".csv":
+            shutil.copyfile(item, target / item.name)
+
+
 def _write(folder: Path, config: Path, sheet: Path) -> None:
+    _prepare(folder)
+    shutil.copyfile(config, folder / "config" / "config.yaml")
+    shutil.copyfile(sheet, folder / "data" / "extraction.xlsx")
+
+
+def _prepare(folder: Path) -> None:
+    """Make the folder with all that does not depend on config and sheet."""
     if folder.exists() and (not folder.is_dir() or any(folder.iterdir())):
         raise FolderTaken(
             f"{folder} exists and is not empty; name a new folder, nothing was written"
         )
     for name in ("config", "data", "profiles/default"):
         (folder / name).mkdir(parents=True, exist_ok=True)
-    shutil.copyfile(config, folder / "config" / "config.yaml")
-    shutil.copyfile(sheet, folder / "data" / "extraction.xlsx")
     write_text(folder / "Snakefile", SNAKEFILE)
     profile = Path("profiles") / "default" / "config.yaml"
     shutil.copyfile(bundled("workflow") / profile, folder / profile)

@@ -27,6 +27,16 @@ class Review:
         return self.root / "cache"
 
     @property
+    def answers(self) -> Path:
+        """What people decided about findings; may be absent."""
+        return self.root / "answers.csv"
+
+    @property
+    def bound_answers(self) -> Path:
+        """Digests of the rows that lines without one were about when they were first read."""
+        return self.cache / "answers.json"
+
+    @property
     def results(self) -> Path:
         """Folder that people read."""
         return self.root / "results"
@@ -49,7 +59,8 @@ class Review:
         path = self.sheet_path()
         if path.is_file():
             return [path.relative_to(self.root)] if path.is_relative_to(self.root) else [path]
-        files = [path / name for name in ("comparisons.csv", "studies.csv")]
+        named = self.settings.layout.sheet or "comparisons.csv"
+        files = [path / name for name in dict.fromkeys((named, "studies.csv"))]
         return [
             file.relative_to(self.root) if file.is_relative_to(self.root) else file
             for file in files

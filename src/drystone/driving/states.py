@@ -110,12 +110,18 @@ class SheetState:
         """Read and store the sheet unless this state is stored already."""
         if (self.folder / "columns.json").exists():
             return
+        from drystone.sheet.answers import read_answers
         from drystone.sheet.intake import take_in
         from drystone.sheet.readers import read_sheet
         from drystone.stages.intake_store import save_intake
 
         settings = self.review.settings
-        intake = take_in(read_sheet(self.review.sheet_path(), settings.columns), settings)
+        raw = read_sheet(self.review.sheet_path(), settings.columns, settings.layout)
+        bound = read_json(self.review.bound_answers) or {}
+        answers = read_answers(self.review.answers, bound)
+        intake = take_in(raw, settings, answers)
+        if answers.newly_bound:
+            write_json(self.review.bound_answers, {**bound, **answers.newly_bound})
         self.folder.parent.mkdir(parents=True, exist_ok=True)
         save_intake(intake, self.folder)
 
@@ -145,7 +151,7 @@ class SheetState:
     def _check_content(self) -> list[str]:
         from drystone.stages.digest_rows import digest_table
 
-        names = ("rows", "studies", "findings", "ledger", "derivations")
+        names = ("rows", "studies", "findings", "accepted", "ledger", "derivations")
         return [digest_table(self.table(name)) for name in names]
 
     def _facts_content(self) -> list[str]:
@@ -169,10 +175,17 @@ class SheetState:
 def sheet_state(review: Review, code: CodeIndex) -> SheetState:
     """State of the review's sheet as it is on disk now; nothing is read but the file's bytes."""
     options = review.settings.model_dump(
-        include={"columns", "defaults", "outcomes", "missing_n", "zero_sd"}
+        include={"columns", "layout", "defaults", "outcomes", "missing_n", "zero_sd"}
     )
-    reading = {"options": options, "path": review.settings.sheet}
+    answered, bound = review.answers.is_file(), review.bound_answers
+    reading = {
+        "options": options,
+        "path": review.settings.sheet,
+        "bound answers": file_digest(bound) if answered and bound.is_file() else "",
+    }
     inputs = {path.as_posix(): file_digest(review.root / path) for path in review.sheet_files()}
+    if answered:
+        inputs[review.answers.name] = file_digest(review.answers)
     modules = SHEET_CODE + DIGEST_CODE
     name = digest(
         [list(inputs.values()), reading, code.closure(modules), code.libraries(SHEET_CODE)]

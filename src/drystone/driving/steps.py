@@ -59,7 +59,7 @@ def _steps(settings: Settings) -> Iterator[Step]:
         "check",
         "check_sheet",
         "check of the sheet",
-        _files("cache/check", "findings", "ledger", "derivations", "studies"),
+        _files("cache/check", "findings", "accepted", "ledger", "derivations", "studies"),
         modules=("drystone.stages.check_sheet",),
         rows="check",
     )

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from drystone.driving.plan import Pending, Plan
@@ -12,6 +13,7 @@ if TYPE_CHECKING:
     import pandas as pd
 
 MOST_CELLS = 5
+LEFT_OUT = "left out by an answer"  # as in sheet/findings/answered.py, too heavy to load here
 
 
 @dataclass(frozen=True)
@@ -106,10 +108,30 @@ def _row_causes(plan: Plan, item: Pending) -> Iterator[str]:
         old, new = old[old["outcome"].isin(wanted)], new[new["outcome"].isin(wanted)]
     letters = {name: entry[0] for name, entry in load_columns(plan.state.folder).items()}
     causes = list(_changed_rows(old, new, columns, letters))
+    causes += _changed_answers(plan, folder, item.step.rows)
     if item.step.rows != "slice":
         studies = load_table(folder, "studies"), plan.state.table("studies")
         causes += list(_changed_studies(*studies))
     yield from _shortened(causes) or ["the sheet changed"]
+
+
+def _changed_answers(plan: Plan, before: Path, needs: str) -> Iterator[str]:
+    """Answers that hold now and did not before, or the other way round."""
+    from drystone.stages.intake_store import load_table
+
+    names = ["ledger"] if needs in ("slice", "figures") else ["ledger", "accepted"]
+    for name in names:
+        try:
+            old, new = load_table(before, name), plan.state.table(name)
+        except FileNotFoundError:  # stored before there were answers
+            continue
+        if name == "ledger":
+            old, new = (table[table["rule"] == LEFT_OUT] for table in (old, new))
+        pairs = [set(zip(t["row_id"].fillna(""), t["rule"], strict=True)) for t in (old, new)]
+        for row, rule in sorted(pairs[0] ^ pairs[1]):
+            word = "holds now" if (row, rule) in pairs[1] else "does not hold any more"
+            where = f"row {row}" if row else "the sheet"
+            yield f"an answer about {where} ({rule}) {word}"
 
 
 def _columns_of(plan: Plan, item: Pending) -> list[str]:

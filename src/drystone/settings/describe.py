@@ -117,7 +117,8 @@ def _kind(annotation: Any) -> str:
         return f"{_kind(inner[0])}; one or a list"
     if inner:  # a type or nothing
         return ", ".join(_kind(option) for option in inner if option is not type(None))
-    return {str: "text", bool: "`true`, `false`", float: "number"}[annotation]
+    kinds = {str: "text", bool: "`true`, `false`", float: "number", int: "whole number"}
+    return kinds[annotation]
 
 
 def _default(field: FieldInfo) -> str:

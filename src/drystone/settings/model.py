@@ -45,6 +45,20 @@ class Defaults(Part):
         return value
 
 
+class Layout(Part):
+    """Where the table of comparisons stands in the team's file, when it is not at the top."""
+
+    sheet: str | None = Field(
+        None, description="sheet of the workbook, or file of the folder, that holds the comparisons"
+    )
+    header_row: int | None = Field(
+        None, ge=1, description="row of the sheet where the headers begin; the first filled one"
+    )
+    header_rows: int = Field(
+        1, ge=1, le=5, description="number of header lines; their texts are joined by a space"
+    )
+
+
 class Outcome(Part):
     """One outcome: its unit, its scale, its direction."""
 
@@ -162,6 +176,9 @@ class Settings(Part):
     )
     columns: dict[str, str] = Field(
         default_factory=dict, description="the team's column names, as ours: theirs"
+    )
+    layout: Layout = Field(
+        default_factory=lambda: Layout(), description="where the comparisons stand in the file"
     )
     defaults: Defaults = Field(
         default_factory=lambda: Defaults(), description="values for absent columns"

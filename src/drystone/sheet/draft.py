@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 import numpy.typing as npt
@@ -15,10 +15,19 @@ from drystone.sheet.raw import RawSheet, RawTable, show
 from drystone.tables.comparisons import NUMBER_COLUMNS
 from drystone.words import arms
 
+if TYPE_CHECKING:
+    from drystone.sheet.answers import Answers
+
 Floats = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
 Texts = npt.NDArray[np.object_]  # str, or None when missing
 Words = str | Sequence[str] | Callable[[int], str]
+
+
+def _no_answers() -> Answers:
+    from drystone.sheet.answers import Answers
+
+    return Answers()
 
 
 @dataclass
@@ -40,6 +49,9 @@ class Draft:
     derivations : records for the derivations table
     studies : the studies table, typed; by column
     worked_out : what later findings look up again and again, by their own names
+    answers : what people decided about findings
+    row_digests : of the rows that an answer is about, as typed
+    unnamed : entries whose row_id is a temporary name
     """
 
     raw: RawSheet
@@ -57,6 +69,10 @@ class Draft:
     derivations: list[dict[str, Any]] = field(default_factory=list)
     studies: dict[str, list[Any]] = field(default_factory=dict)
     worked_out: dict[Any, Any] = field(default_factory=dict)
+
+    answers: Answers = field(default_factory=_no_answers)
+    row_digests: dict[int, str] = field(default_factory=dict)
+    unnamed: set[int] = field(default_factory=set)
 
     def __post_init__(self) -> None:
         """Begin without anything recovered."""

@@ -9,8 +9,9 @@ import numpy as np
 import pandas as pd
 
 from drystone.sheet.draft import Draft
+from drystone.sheet.findings.answered import Accepted
 from drystone.sheet.notes import Note
-from drystone.tables.check import DERIVATIONS, FINDINGS, LEDGER
+from drystone.tables.check import ACCEPTED, DERIVATIONS, FINDINGS, LEDGER
 from drystone.tables.comparisons import COLUMNS
 from drystone.tables.store import conform, empty_table
 from drystone.words import arms, levels
@@ -33,28 +34,40 @@ def row_table(draft: Draft) -> pd.DataFrame:
 
 def finding_table(draft: Draft, notes: Sequence[Note]) -> pd.DataFrame:
     """One row = one finding, in the order of the rules, then of the sheet."""
-    kept = [
-        note
-        for note in notes
-        if note.row is None or note.row not in draft.left_out or note.rule == ABOUT_IDENTITY
-    ]
+    kept = [note for note in notes if _speaks(draft, note)]
     if not kept:
         return empty_table(FINDINGS)
+    return conform(pd.DataFrame(_cells(draft, kept)).astype("str"), FINDINGS)
+
+
+def accepted_table(draft: Draft, accepted: Sequence[Accepted]) -> pd.DataFrame:
+    """One row = one finding that a person accepted, with the decision."""
+    kept = [(note, answer) for note, answer in accepted if _speaks(draft, note)]
+    if not kept:
+        return empty_table(ACCEPTED)
+    cells = _cells(draft, [note for note, _ in kept])
+    for name in ("decision", "reason", "who", "date"):
+        cells[name] = [getattr(answer, name) or None for _, answer in kept]
+    return conform(pd.DataFrame(cells).astype("str"), ACCEPTED)
+
+
+def _speaks(draft: Draft, note: Note) -> bool:
+    return note.row is None or note.row not in draft.left_out or note.rule == ABOUT_IDENTITY
+
+
+def _cells(draft: Draft, kept: Sequence[Note]) -> dict[str, list[Any]]:
     row_ids = draft.text("row_id")
-    table = pd.DataFrame(
-        {
-            "level": [note.level for note in kept],
-            "rule": [note.rule for note in kept],
-            "sheet": [note.sheet or draft.table.name for note in kept],
-            "cell": [note.cell for note in kept],
-            "row_id": [None if note.row is None else row_ids[note.row] for note in kept],
-            "column": [note.column for note in kept],
-            "value": [note.value for note in kept],
-            "wrong": [note.wrong for note in kept],
-            "todo": [note.todo for note in kept],
-        }
-    )
-    return conform(table.astype("str"), FINDINGS)
+    return {
+        "level": [note.level for note in kept],
+        "rule": [note.rule for note in kept],
+        "sheet": [note.sheet or draft.table.name for note in kept],
+        "cell": [note.cell for note in kept],
+        "row_id": [None if note.row is None else row_ids[note.row] for note in kept],
+        "column": [note.column for note in kept],
+        "value": [note.value for note in kept],
+        "wrong": [note.wrong for note in kept],
+        "todo": [note.todo for note in kept],
+    }
 
 
 def ledger_table(draft: Draft, notes: Sequence[Note]) -> pd.DataFrame:

@@ -7,9 +7,17 @@ from dataclasses import dataclass
 import pandas as pd
 
 from drystone.settings.model import Settings
+from drystone.sheet.answers import Answers
 from drystone.sheet.draft import Draft
 from drystone.sheet.findings import STEPS
-from drystone.sheet.finish import derivation_table, finding_table, ledger_table, row_table
+from drystone.sheet.findings.answered import sort_answered
+from drystone.sheet.finish import (
+    accepted_table,
+    derivation_table,
+    finding_table,
+    ledger_table,
+    row_table,
+)
 from drystone.sheet.headers import ALWAYS_NEEDED, match_headers, require
 from drystone.sheet.notes import Note
 from drystone.sheet.raw import RawSheet, letters
@@ -27,19 +35,23 @@ class Intake:
     rows : every row of the sheet: our columns, where each row stands, the SD to use, moderators,
         and what the studies table says of its study
     studies : one row = one study; columns as in `drystone.tables.studies`
+    accepted : findings that a person accepted, with the decision; they are not in ``findings``
     findings, ledger, derivations : as in `drystone.tables.check`; every row is either usable or
         in the ledger, once
     columns : where each of our columns stands: letter and header as typed
     moderators : names of the sheet's other columns
+    unnamed : places of rows whose row_id is a temporary name
     """
 
     rows: pd.DataFrame
     studies: pd.DataFrame
     findings: pd.DataFrame
+    accepted: pd.DataFrame
     ledger: pd.DataFrame
     derivations: pd.DataFrame
     columns: dict[str, tuple[str, str]]
     moderators: tuple[str, ...]
+    unnamed: frozenset[int] = frozenset()
 
     @property
     def usable(self) -> pd.DataFrame:
@@ -48,8 +60,12 @@ class Intake:
         return self.rows[~self.rows["sheet_row"].isin(left)].reset_index(drop=True)
 
 
-def take_in(raw: RawSheet, settings: Settings) -> Intake:
+def take_in(raw: RawSheet, settings: Settings, answers: Answers | None = None) -> Intake:
     """Type and check the sheet. No content of a cell makes this fail.
+
+    Parameters
+    ----------
+    answers : what people decided about findings; lines without a digest are bound in there
 
     Raises
     ------
@@ -58,15 +74,18 @@ def take_in(raw: RawSheet, settings: Settings) -> Intake:
         is not there.
     """
     draft, notes = _open(raw, settings)
+    draft.answers = answers or Answers()
     notes.extend(open_studies(draft))
     for step in STEPS:
         notes.extend(step(draft))
-    findings, ledger = finding_table(draft, notes), ledger_table(draft, notes)
+    unanswered, accepted = sort_answered(draft, notes)
+    findings, ledger = finding_table(draft, unanswered), ledger_table(draft, notes)
     places = {name: draft.found[name] for name in COLUMNS if name in draft.found}
     return Intake(
         rows=row_table(draft),
         studies=study_table(draft),
         findings=findings,
+        accepted=accepted_table(draft, accepted),
         ledger=ledger,
         derivations=derivation_table(draft),
         columns={
@@ -74,6 +93,7 @@ def take_in(raw: RawSheet, settings: Settings) -> Intake:
             for name, place in places.items()
         },
         moderators=tuple(draft.extras),
+        unnamed=frozenset(draft.unnamed),
     )
 
 

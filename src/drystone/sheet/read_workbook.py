@@ -9,10 +9,13 @@ from typing import Any
 
 from python_calamine import CalamineWorkbook, SheetTypeEnum
 
+from drystone.settings.model import Layout
+from drystone.settings.problems import nearest
 from drystone.sheet import limits
 from drystone.sheet.grid import table_from_grid
 from drystone.sheet.guard import Inspection, inspect
 from drystone.sheet.headers import has_needed
+from drystone.sheet.laid_out import laid_out_table
 from drystone.sheet.notes import Note
 from drystone.sheet.problems import SheetProblem
 from drystone.sheet.raw import RawSheet, RawTable
@@ -21,19 +24,46 @@ from drystone.words import levels
 Found = tuple[RawTable, list[Note]]
 
 
-def read_workbook(path: Path, columns: Mapping[str, str]) -> RawSheet:
+def read_workbook(path: Path, columns: Mapping[str, str], layout: Layout) -> RawSheet:
     """Read the comparisons (and studies) of the workbook at ``path``; see `readers.read_sheet`."""
-    content = limits.read_whole(path)
-    inspection = inspect(content, str(path))
-    grids = _grids(content, str(path))
+    grids, inspection = open_workbook(path)
     tables = _tables(grids, inspection, str(path))
-    comparisons, remarks = tables[_choose(tables, columns, str(path))]
+    if layout == Layout():
+        name = _choose(tables, columns, str(path))
+        comparisons, remarks = tables[name]
+    else:
+        name = _named(tables, layout, str(path)) or _choose(tables, columns, str(path))
+        broken = inspection.broken.get(name, {})
+        comparisons, remarks = laid_out_table(name, grids[name], broken, str(path), layout)
     studies = next((name for name in tables if name.strip().casefold() == "studies"), None)
-    remarks = _macros(inspection) + remarks
+    remarks = macros(inspection) + remarks
     if studies is None or studies == comparisons.name:
         return RawSheet(path.name, comparisons, None, tuple(remarks))
     table, more = tables[studies]
     return RawSheet(path.name, comparisons, table, tuple(remarks + more))
+
+
+def open_workbook(path: Path) -> tuple[dict[str, Any], Inspection]:
+    """Cells of every sheet of the workbook at ``path`` from A1, and what the guard saw.
+
+    Raises
+    ------
+    SheetProblem
+        When the file is absent, dangerous, damaged or no workbook.
+    """
+    content = limits.read_whole(path)
+    inspection = inspect(content, str(path))
+    return _grids(content, str(path)), inspection
+
+
+def _named(tables: Mapping[str, Found], layout: Layout, file: str) -> str | None:
+    if layout.sheet is None or layout.sheet in tables:
+        return layout.sheet
+    raise SheetProblem(
+        f"has no sheet '{layout.sheet}' with data, which 'layout' in the config names: "
+        f"{nearest(layout.sheet, tables)}",
+        file,
+    )
 
 
 def _grids(content: bytes, file: str) -> dict[str, Any]:
@@ -84,7 +114,8 @@ def _choose(tables: Mapping[str, Found], columns: Mapping[str, str], file: str) 
     )
 
 
-def _macros(inspection: Inspection) -> list[Note]:
+def macros(inspection: Inspection) -> list[Note]:
+    """Remark about macros, when the workbook holds any."""
     if not inspection.macros:
         return []
     return [

@@ -120,9 +120,14 @@ def stream(
                 size += len(chunk)
                 meter.count_inflated(len(chunk), part, size)
                 scan.feed(chunk)
-    except (zipfile.BadZipFile, zlib.error, EOFError, OSError, RuntimeError) as error:
+    except UNREADABLE as error:
         raise SheetProblem(damaged(str(error) or type(error).__name__), meter.file) from error
     scan.end()
+
+
+#: What the zip reader raises on damaged or unusual entries; UnicodeDecodeError is a ValueError, and
+#: NotImplementedError (an unknown zip version or method) is a RuntimeError.
+UNREADABLE = (zipfile.BadZipFile, zlib.error, EOFError, OSError, RuntimeError, UnicodeError)
 
 
 class _Scan:

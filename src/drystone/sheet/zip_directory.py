@@ -39,7 +39,7 @@ def open_zip(content: bytes, file: str) -> zipfile.ZipFile:
         raise SheetProblem(_too_many(), file)
     try:
         archive = zipfile.ZipFile(io.BytesIO(content))
-    except (zipfile.BadZipFile, ValueError, OSError, struct.error) as error:
+    except (zipfile.BadZipFile, ValueError, OSError, RuntimeError, struct.error) as error:
         raise SheetProblem(damaged(str(error) or type(error).__name__), file) from error
     _check_parts(archive, file)
     return archive

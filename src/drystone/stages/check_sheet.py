@@ -10,6 +10,7 @@ from drystone.tables.store import write_table
 
 SCHEMAS = {
     "findings": check.FINDINGS,
+    "accepted": check.ACCEPTED,
     "ledger": check.LEDGER,
     "derivations": check.DERIVATIONS,
     "studies": studies.SCHEMA,

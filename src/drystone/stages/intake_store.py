@@ -20,7 +20,7 @@ from drystone.tables.store import read_table, write_table
 if TYPE_CHECKING:
     from drystone.sheet.intake import Intake
 
-TABLES = ("rows", "studies", "findings", "ledger", "derivations")
+TABLES = ("rows", "studies", "findings", "accepted", "ledger", "derivations")
 
 
 def save_intake(intake: Intake, folder: Path) -> None:

@@ -28,6 +28,7 @@ if TYPE_CHECKING:
     from drystone.settings.model import Settings
 
 FINDINGS = Path("check") / "findings.csv"
+ACCEPTED = Path("check") / "accepted.csv"
 SUMMARY = (
     *("analysis", "strategy", "model", "coefficient", "estimate", "se", "df"),
     *("ci_low", "ci_high", "p", "se_model", "pi_low", "pi_high"),
@@ -107,6 +108,8 @@ def _write_tables(root: Path, settings: Settings, intake: Path, target: Path) ->
     write_csv(read_table(check / "findings.parquet"), target / FINDINGS)
     tables = target / "tables"
     write_csv(read_table(check / "findings.parquet"), tables / "findings.csv")
+    write_csv(read_table(check / "accepted.parquet"), tables / "accepted.csv")
+    write_csv(read_table(check / "accepted.parquet"), target / ACCEPTED)
     derivations = collect.whole_derivations(root, settings, intake)
     write_csv(derivations, tables / "derivations.csv")
     write_csv(collect.whole_ledger(root, settings, intake), tables / "ledger.csv")

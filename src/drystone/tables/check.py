@@ -3,19 +3,33 @@
 from drystone.tables.columns import number, schema, text, whole
 from drystone.words import arms, levels
 
+FOUND = {
+    "level": text("how far the row can go", required=True, allowed=levels.LEVELS),
+    "rule": text("short name of the rule", required=True),
+    "sheet": text("sheet of the workbook, or file of the folder"),
+    "cell": text("address, such as F143; blank when the finding is about no single cell"),
+    "row_id": text("row"),
+    "column": text("drystone's name of the column"),
+    "value": text("the cell as typed"),
+    "wrong": text("what is wrong", required=True),
+    "todo": text("what to do", required=True),
+}
+
 FINDINGS = schema(
     "findings",
     "one thing that the check found in one cell (or row, or column when row_id is blank)",
+    FOUND,
+)
+
+ACCEPTED = schema(
+    "accepted",
+    "one finding that a person accepted in answers.csv",
     {
-        "level": text("how far the row can go", required=True, allowed=levels.LEVELS),
-        "rule": text("short name of the rule", required=True),
-        "sheet": text("sheet of the workbook, or file of the folder"),
-        "cell": text("address, such as F143; blank when the finding is about no single cell"),
-        "row_id": text("row"),
-        "column": text("drystone's name of the column"),
-        "value": text("the cell as typed"),
-        "wrong": text("what is wrong", required=True),
-        "todo": text("what to do", required=True),
+        **FOUND,
+        "decision": text("what was decided", required=True),
+        "reason": text("why, as typed"),
+        "who": text("who decided"),
+        "date": text("when, as typed"),
     },
 )
 

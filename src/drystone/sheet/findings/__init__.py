@@ -18,6 +18,7 @@ and name it in ``STEPS``. Address, value as typed, ledger and display follow fro
 from collections.abc import Callable, Iterable
 
 from drystone.sheet.draft import Draft
+from drystone.sheet.findings.answered import left_out_by_answer
 from drystone.sheet.findings.arms import unlike_arms
 from drystone.sheet.findings.bounds import impossible_sds, whole_numbers
 from drystone.sheet.findings.cells import mixed_columns, read_cells
@@ -53,6 +54,7 @@ STEPS: tuple[Step, ...] = (
     mixed_columns,
     check_row_ids,
     left_out_by_team,
+    left_out_by_answer,
     unknown_studies,
     check_outcomes,
     check_scales,

@@ -17,6 +17,7 @@ def check_row_ids(draft: Draft) -> Iterator[Note]:
     if not blank:
         return
     _name(draft, blank)
+    draft.unnamed.update(blank)
     first = blank[0]
     yield Note(
         levels.WARN,

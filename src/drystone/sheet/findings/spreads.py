@@ -83,6 +83,7 @@ def _zero(draft: Draft, arm: str) -> Iterator[Note]:
             yield draft.note(level, "zero spread", column, row, wrong, todo)
     gone = zero & ~kept
     sds[gone], rules[gone] = np.nan, None
+    rules[kept] = "as typed"  # zero is zero in every kind of spread, so nothing was computed
 
 
 def _origin(draft: Draft, arm: str, row: int, rules: Texts) -> str:

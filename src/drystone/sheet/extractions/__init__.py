@@ -1,0 +1,1 @@
+"""Two extractions of the same papers, compared cell by cell."""
