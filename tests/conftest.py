@@ -1,0 +1,8 @@
+"""Random inputs are the same in every run, so that a red run can be repeated."""
+
+from __future__ import annotations
+
+from hypothesis import settings
+
+settings.register_profile("repeatable", derandomize=True, deadline=None)
+settings.load_profile("repeatable")
