@@ -42,7 +42,7 @@ def _unlabelled(draft: Draft, arm: str, without: Mask) -> Iterator[Note]:
         where(without & (kinds == spreads.UNLABELLED) & (spread > 0) & ~np.isnan(n)),
         lambda row: (
             f"nothing says what this spread is: taken as an SD it is {spread[row]:.6g}, as an SE "
-            f"the SD would be {spread[row] * np.sqrt(n[row]):.6g}; {NO_SD}"
+            f"the SD would be {spread[row] * np.sqrt(max(n[row], 0.0)):.6g}; {NO_SD}"
         ),
         "look for the legend or the methods, and choose its kind; ask the authors",
     )
